@@ -4,6 +4,7 @@ The tree::
 
     CardgenError                 exit code 1, never raised itself
     ├── UsageError           2   the command was called wrongly
+    │   └── QuantityError    2   a quantity such as "24.5 inHg" cannot be read as asked
     ├── DataError            3   a profile, points or fit file is bad; carries Problems
     ├── NoSolutionError      4   the physics has no answer for what was asked
     │   └── DomainError      4   a number lies outside what a table or formula covers
@@ -61,6 +62,27 @@ class UsageError(CardgenError):
     """The command was called with options that make no sense together."""
 
     exit_code = 2
+
+
+class QuantityError(UsageError):
+    """A text is not a number with a unit of the dimension asked for.
+
+    Parameters
+    ----------
+    found : str
+        What was given and what is wrong with it [-]
+    expected : str
+        What was expected instead, with examples [-]
+    """
+
+    def __init__(self, found: str, expected: str) -> None:
+        self.found = found
+        self.expected = expected
+        super().__init__(found, expected)
+
+    def __str__(self) -> str:
+        """Return one line saying what was found and what was expected."""
+        return f"{self.found}; expected {self.expected}"
 
 
 class DataError(CardgenError):

@@ -1,0 +1,1 @@
+"""Limits, gauges and the one function that holds a setting against them."""

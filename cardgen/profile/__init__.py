@@ -1,0 +1,1 @@
+"""Profiles: YAML in, frozen dataclasses out, every problem with its place."""

@@ -1,0 +1,1 @@
+"""Tables: sweeps over altitude, temperature, power and rpm, and the content of a card."""

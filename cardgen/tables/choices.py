@@ -1,0 +1,34 @@
+"""What a card shows: columns, rows, powers, mixtures, units, paper."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Literal
+
+
+@dataclass(frozen=True, slots=True)
+class UnitSet:
+    """Units a card is printed in, by the names of `cardgen.units`."""
+
+    pressure: str = "inHg"
+    fuel_flow: str = "gal/h"
+    speed: str = "kt"
+    temperature: str = "degC"
+    altitude: str = "ft"
+    mass: str = "lb"
+
+
+@dataclass(frozen=True, slots=True)
+class CardChoices:
+    """What one aircraft's card shows; altitudes in m, temperatures in K, masses in kg."""
+
+    rpm: tuple[float, ...]  # as the tachometer reads
+    power_fraction: tuple[float, ...]
+    altitude: tuple[float, ...]
+    altitude_kind: Literal["density", "pressure"]
+    isa_deviation: tuple[float, ...]  # temperature columns of a pressure-altitude card
+    mass: tuple[float, ...]
+    mixtures: tuple[str, ...]
+    units: UnitSet = UnitSet()
+    paper: str = "half-letter"
+    relative_humidity: float = 0.0
