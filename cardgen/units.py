@@ -159,7 +159,6 @@ _TABLE: Final[dict[Dimension, tuple[tuple[str, float, float], ...]]] = {
     ),
     "force": (
         ("N", 1.0, 0.0),
-        ("kN", 1.0e3, 0.0),
         ("daN", 10.0, 0.0),
         ("lbf", c.POUND_FORCE, 0.0),
         ("kgf kp", c.GRAVITY, 0.0),
@@ -258,15 +257,18 @@ def _spellings() -> dict[str, dict[Dimension, Unit]]:
 
 _UNITS: Final = _spellings()
 
-# Suffix of a column or option name -> spelling in the table above.
-_SUFFIXES: Final[dict[str, str]] = {
-    suffix: suffix
-    for suffix in (
-        "m mm cm km in ft nm sm m2 ft2 m3 l gal impgal in3 cm3 mps kt mph kmh fps fpm s min h rad"
-        " deg kg lb n lbf pa hpa kpa mbar bar inhg mmhg cmhg psi k c f w kw hp ps gph lph impgph"
-        " kgph pph percent"
-    ).split()
-}
+# Spellings in the table above that may end a column or option name. Not all of them: a name such as
+# `warm_up_at` must not be taken for a pressure. `rpm` is a name of its own, never a suffix.
+_SUFFIXES: Final = frozenset(
+    suffix
+    for suffixes in (
+        "m mm cm km in ft nm sm m2 ft2 m3 l gal impgal in3 cm3",
+        "mps kt mph kmh fps fpm s min h rad deg kg lb n lbf",
+        "pa hpa kpa mbar bar inhg mmhg cmhg psi k c f w kw hp ps",
+        "gph lph impgph kgph pph percent",
+    )
+    for suffix in suffixes.split()
+)
 
 _QUANTITY: Final = re.compile(r"([+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?)(.*)")
 _SAME_CHARACTER: Final = str.maketrans({"−": "-", "–": "-", "°": "deg", "º": "deg", "·": "."})
@@ -455,10 +457,9 @@ def split_suffix(name: str, *, dimension: Dimension | None = None) -> tuple[str,
         The suffix is a unit of another dimension than the one asked for.
     """
     quantity, _, suffix = name.rpartition("_")
-    spelling = _SUFFIXES.get(suffix.casefold())
-    if not quantity or spelling is None:
+    if not quantity or suffix.casefold() not in _SUFFIXES:
         return name, None
-    return quantity, find_unit(spelling, dimension=dimension)
+    return quantity, find_unit(suffix, dimension=dimension)
 
 
 def known_units(dimension: Dimension) -> tuple[Unit, ...]:
