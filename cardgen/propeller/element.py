@@ -1,0 +1,220 @@
+"""Blade-element momentum solution of a propeller, all stations and points in one array."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from cardgen.propeller.blade import REFERENCE_STATION, Blade, Body, Propeller
+from cardgen.propeller.section import clark_y, lift_drag
+from cardgen.roots import find_root
+
+FloatArray = NDArray[np.float64]
+
+#: Gauss-Legendre stations along the blade; see `_stations`.
+STATION_COUNT = 18
+#: Inflow angles are solved to this [rad].
+_ANGLE_TOLERANCE = 1e-9
+#: Points solved at once: stations times points then stay in the processor's cache.
+_CHUNK = 1536
+
+
+@dataclass(frozen=True, slots=True)
+class Coefficients:
+    """What a propeller does at given operating points, isolated (no installation factor).
+
+    Parameters
+    ----------
+    power_coefficient : ndarray
+        C_P = P / (rho n^3 D^5) [-]
+    thrust_coefficient : ndarray
+        C_T = T / (rho n^2 D^4) [-]
+    angle_of_attack : ndarray
+        Angle of attack of the section at 0.75 R, induced flow included [rad]
+    """
+
+    power_coefficient: FloatArray
+    thrust_coefficient: FloatArray
+    angle_of_attack: FloatArray
+
+
+@dataclass(frozen=True, slots=True)
+class _Stations:
+    """Blade data at the stations of the spanwise integral, as columns."""
+
+    x: FloatArray
+    weight: FloatArray
+    chord: FloatArray
+    thickness: FloatArray
+    twist: FloatArray
+    hub: float
+
+
+@lru_cache(maxsize=64)
+def _stations(blade: Blade) -> _Stations:
+    """Stations crowded towards the tip, where the loading falls like a square root."""
+    nodes, weights = np.polynomial.legendre.leggauss(STATION_COUNT)
+    s = 0.5 * (nodes + 1.0)
+    hub = blade.radius_fraction[0]
+    x = 1.0 - (1.0 - hub) * (1.0 - s) ** 2
+    weight = 0.5 * weights * 2.0 * (1.0 - hub) * (1.0 - s)
+    return _Stations(
+        x=x[:, None],
+        weight=weight,
+        chord=blade.chord(x)[:, None],
+        thickness=blade.thickness(x)[:, None],
+        twist=blade.twist_at(x)[:, None],
+        hub=hub,
+    )
+
+
+def inflow_factor(body: Body | None, station: ArrayLike) -> FloatArray:
+    """Axial speed at the propeller over flight speed, slowed by the body behind it.
+
+    Parameters
+    ----------
+    body : Body or None
+        Body behind the propeller.
+    station : array_like
+        Radius over tip radius [-]
+
+    Returns
+    -------
+    ndarray
+        Local over undisturbed axial speed [-]
+
+    Notes
+    -----
+    Point source in a uniform stream, which makes a half body of final radius a:
+    ``1 - (a^2/4) z / (z^2 + r^2)^(3/2)``, z the distance ahead of the source.
+    """
+    x = np.asarray(station, dtype=np.float64)
+    if body is None:
+        return np.ones_like(x)
+    z = body.distance_fraction
+    return 1.0 - 0.25 * body.radius_fraction**2 * z / (z * z + x * x) ** 1.5
+
+
+def coefficients(
+    propeller: Propeller,
+    advance_ratio: ArrayLike,
+    *,
+    blade_angle: ArrayLike,
+    tip_mach: ArrayLike,
+) -> Coefficients:
+    """Solve a propeller at given operating points.
+
+    Parameters
+    ----------
+    propeller : Propeller
+        The propeller; its diameter and stops play no part.
+    advance_ratio : array_like
+        J = V / (n D), positive [-]
+    blade_angle : array_like
+        Blade angle at 0.75 R [rad]
+    tip_mach : array_like
+        Mach number of the tip's rotation alone, pi n D / a; flight speed is added here from J [-]
+
+    Returns
+    -------
+    Coefficients
+        Of the broadcast shape; NaN where the equations have no root, as on a windmilling blade.
+
+    Notes
+    -----
+    Per station, with local solidity ``s = B c / (2 pi r)``, loss factor F and speed ratio
+    ``l = V_x/(Omega r)``, momentum and blade forces balance at the inflow angle phi where
+
+        4 F sin(phi) (sin(phi) - l cos(phi)) - s (c_n + l c_t) = 0,
+
+    Ning's residual multiplied by its denominators, which leaves it without singularity. The
+    angle without induced flow and the angle without lift always enclose the root.
+
+    References
+    ----------
+    S. A. Ning, "A simple solution method for the blade element momentum equations with guaranteed
+    convergence", Wind Energy 17 (2014), pp. 1327-1345.
+    H. Glauert, "Airplane propellers", in W. F. Durand (ed.), Aerodynamic Theory IV (1935): loss
+    factor of Prandtl.
+    """
+    j, beta, mach = np.broadcast_arrays(
+        np.asarray(advance_ratio, dtype=np.float64),
+        np.asarray(blade_angle, dtype=np.float64),
+        np.asarray(tip_mach, dtype=np.float64),
+    )
+    shape = j.shape
+    j, beta, mach = j.reshape(-1), beta.reshape(-1), mach.reshape(-1)
+    out = np.empty((3, j.size))
+    for start in range(0, j.size, _CHUNK):
+        part = slice(start, start + _CHUNK)
+        out[:, part] = _solve(propeller, j[part], beta[part], mach[part])
+    power, thrust, angle = out.reshape((3, *shape))
+    return Coefficients(power, thrust, angle)
+
+
+def _solve(propeller: Propeller, j: FloatArray, beta: FloatArray, mach: FloatArray) -> FloatArray:
+    """Power coefficient, thrust coefficient and angle of attack of one chunk of points."""
+    blades = float(propeller.blade_count)
+    at = _stations(propeller.blade)
+    x = at.x
+    ratio = inflow_factor(propeller.body, x) * j / (np.pi * x)
+    local_mach = mach * np.hypot(x, j / np.pi)
+    section = clark_y(at.thickness, local_mach, chord_to_radius=2.0 * at.chord / x)
+    angle = beta + at.twist
+    solidity = blades * at.chord / (np.pi * x)
+    tip = -0.5 * blades * (1.0 - x) / x
+    hub = -0.5 * blades * (x - at.hub) / at.hub
+
+    def residual(phi: FloatArray) -> FloatArray:
+        sine, cosine = np.sin(phi), np.cos(phi)
+        lift, drag = lift_drag(section, angle - phi)
+        normal = lift * cosine - drag * sine
+        tangential = lift * sine + drag * cosine
+        loss = _loss(sine, tip, hub)
+        return 4.0 * loss * sine * (sine - ratio * cosine) - solidity * (
+            normal + ratio * tangential
+        )
+
+    no_induction = np.arctan(ratio)
+    no_lift = np.maximum(angle - section.zero_lift_angle, 1e-3)
+    phi = find_root(residual, no_induction, no_lift, tolerance=_ANGLE_TOLERANCE)
+
+    sine, cosine = np.sin(phi), np.cos(phi)
+    lift, drag = lift_drag(section, angle - phi)
+    normal = lift * cosine - drag * sine
+    tangential = lift * sine + drag * cosine
+    loss = _loss(sine, tip, hub)
+    # W / (n D), from the tangential component: never singular.
+    speed = np.pi * x / (cosine + solidity * tangential / (4.0 * loss * sine))
+    load = at.weight[:, None] * speed * speed * at.chord
+    thrust = 0.25 * blades * np.sum(load * normal, axis=0)
+    power = 0.25 * np.pi * blades * np.sum(load * tangential * x, axis=0)
+    thrust = _less_slipstream_drag(propeller.body, thrust)
+    incidence = beta - _interpolate(x[:, 0], phi)
+    return np.stack((power, thrust, incidence))
+
+
+def _loss(sine: FloatArray, tip: FloatArray, hub: FloatArray) -> FloatArray:
+    """Prandtl's loss factor of tip and hub together."""
+    at_tip = np.arccos(np.exp(tip / sine))
+    at_hub = np.arccos(np.exp(hub / sine))
+    loss: FloatArray = (4.0 / np.pi**2) * at_tip * at_hub
+    return loss
+
+
+def _less_slipstream_drag(body: Body | None, thrust: FloatArray) -> FloatArray:
+    """Thrust less the drag that the slipstream's added dynamic pressure, T/A, puts on the body."""
+    if body is None:
+        return thrust
+    return thrust * (1.0 - body.drag_coefficient * body.radius_fraction**2)
+
+
+def _interpolate(x: FloatArray, phi: FloatArray) -> FloatArray:
+    """Inflow angle at 0.75 R, linear between the stations around it."""
+    k = int(np.searchsorted(x, REFERENCE_STATION))
+    share = (REFERENCE_STATION - x[k - 1]) / (x[k] - x[k - 1])
+    at: FloatArray = (1.0 - share) * phi[k - 1] + share * phi[k]
+    return at

@@ -1,0 +1,263 @@
+"""Coefficients of a propeller tabulated once, and the blade angle its governor finds."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from cardgen.curves import SplineGrid
+from cardgen.propeller.blade import REFERENCE_STATION, Propeller
+from cardgen.propeller.element import Coefficients, coefficients
+from cardgen.roots import find_root
+
+FloatArray = NDArray[np.float64]
+
+#: Domain of every table. The second axis is the blade's incidence: blade angle less the angle of
+#: the undisturbed helix at 0.75 R, in which all propellers look alike.
+LEAST_ADVANCE_RATIO = 0.2
+LEAST_INCIDENCE, GREATEST_INCIDENCE = np.radians(-4.0), np.radians(18.0)
+LEAST_TIP_MACH, GREATEST_TIP_MACH = 0.40, 0.95
+_NODES = (16, 18, 6)
+_GOVERNED_NODES = (20, 24, 6)
+#: Incidences at which the rise of C_P is looked over for its first peak, the stall.
+_SCAN = 45
+#: Advance ratio goes up to where the blade at its coarse stop, and this much more, windmills.
+_COARSE_MARGIN = np.radians(6.0)
+_ADVANCE_RATIO_STEP = 0.1
+
+
+@dataclass(frozen=True, slots=True)
+class CoefficientTable:
+    """Coefficients over advance ratio, blade angle and tip Mach number, and their inverse.
+
+    Build it with `coefficient_table`.
+
+    Parameters
+    ----------
+    forward : SplineGrid
+        C_P, C_T and section angle of attack over (J, incidence, Mach).
+    inverse : SplineGrid
+        Incidence and C_T over (J, relative power, Mach).
+    least_power, greatest_power : tuple of float
+        Polynomials of J, constant term first, between which C_P can be inverted [-]
+    """
+
+    forward: SplineGrid
+    inverse: SplineGrid
+    least_power: tuple[float, float, float]
+    greatest_power: tuple[float, float, float]
+
+    @property
+    def greatest_advance_ratio(self) -> float:
+        """Upper end of the advance ratios [-]."""
+        return self.forward.upper[0]
+
+    def coefficients(
+        self, advance_ratio: ArrayLike, *, blade_angle: ArrayLike, tip_mach: ArrayLike
+    ) -> Coefficients:
+        """Coefficients at given blade angles.
+
+        Parameters
+        ----------
+        advance_ratio : array_like
+            J = V / (n D) [-]
+        blade_angle : array_like
+            Blade angle at 0.75 R [rad]
+        tip_mach : array_like
+            Mach number of the tip's rotation alone [-]
+
+        Returns
+        -------
+        Coefficients
+            NaN outside the table.
+        """
+        j = np.asarray(advance_ratio, dtype=np.float64)
+        incidence = np.asarray(blade_angle, dtype=np.float64) - effective_helix_angle(j)
+        power, thrust, angle = self.forward.values((j, incidence, tip_mach), (0, 1, 2))
+        return Coefficients(power, thrust, angle)
+
+    def governed(
+        self, advance_ratio: ArrayLike, *, power_coefficient: ArrayLike, tip_mach: ArrayLike
+    ) -> tuple[FloatArray, FloatArray]:
+        """Blade angle that absorbs a power, as a governor finds it, and its thrust.
+
+        Parameters
+        ----------
+        advance_ratio : array_like
+            J = V / (n D) [-]
+        power_coefficient : array_like
+            C_P to absorb [-]
+        tip_mach : array_like
+            Mach number of the tip's rotation alone [-]
+
+        Returns
+        -------
+        blade_angle : ndarray
+            Blade angle at 0.75 R, wherever the stops are; NaN outside the table [rad]
+        thrust_coefficient : ndarray
+            C_T, isolated; NaN outside the table [-]
+        """
+        j = np.asarray(advance_ratio, dtype=np.float64)
+        share = self._relative_power(j, np.asarray(power_coefficient, dtype=np.float64))
+        incidence, thrust = self.inverse.values((j, share, tip_mach), (0, 1))
+        return incidence + effective_helix_angle(j), thrust
+
+    def governed_thrust(
+        self, advance_ratio: ArrayLike, *, power_coefficient: ArrayLike, tip_mach: ArrayLike
+    ) -> FloatArray:
+        """Thrust coefficient of `governed` alone, in half the time.
+
+        Parameters
+        ----------
+        advance_ratio : array_like
+            J = V / (n D) [-]
+        power_coefficient : array_like
+            C_P to absorb [-]
+        tip_mach : array_like
+            Mach number of the tip's rotation alone [-]
+
+        Returns
+        -------
+        ndarray
+            C_T, isolated; NaN outside the table [-]
+        """
+        j = np.asarray(advance_ratio, dtype=np.float64)
+        share = self._relative_power(j, np.asarray(power_coefficient, dtype=np.float64))
+        (thrust,) = self.inverse.values((j, share, tip_mach), (1,))
+        return thrust
+
+    def _relative_power(self, j: FloatArray, power: FloatArray) -> FloatArray:
+        """C_P between the least (0) and the greatest (1) that can be inverted at this J."""
+        least = _polynomial(self.least_power, j)
+        share: FloatArray = (power - least) / (_polynomial(self.greatest_power, j) - least)
+        return share
+
+
+def effective_helix_angle(advance_ratio: ArrayLike) -> FloatArray:
+    """Angle of the undisturbed helix at 0.75 R.
+
+    Parameters
+    ----------
+    advance_ratio : array_like
+        J = V / (n D) [-]
+
+    Returns
+    -------
+    ndarray
+        ``arctan(J / (0.75 pi))`` [rad]
+    """
+    return np.arctan(np.asarray(advance_ratio, dtype=np.float64) / (REFERENCE_STATION * np.pi))
+
+
+def coefficient_table(propeller: Propeller) -> CoefficientTable:
+    """Table of a propeller, computed once per shape and kept.
+
+    Parameters
+    ----------
+    propeller : Propeller
+        The propeller; its diameter, fine stop and installation factor play no part.
+
+    Returns
+    -------
+    CoefficientTable
+        Covers advance ratios from 0.2 to where the blade windmills at its coarse stop, tip Mach
+        numbers from 0.40 to 0.95, and incidences at 0.75 R from -4 to 18 degrees.
+    """
+    reach = REFERENCE_STATION * np.pi * np.tan(propeller.coarse_stop + _COARSE_MARGIN)
+    steps = int(np.ceil((min(reach, 4.0) - LEAST_ADVANCE_RATIO) / _ADVANCE_RATIO_STEP))
+    shape = Propeller(
+        diameter=1.0,
+        blade_count=propeller.blade_count,
+        blade=propeller.blade,
+        fine_stop=0.0,
+        coarse_stop=0.0,
+        installation_factor=1.0,
+        body=propeller.body,
+    )
+    return _build(shape, max(steps, 8))
+
+
+@lru_cache(maxsize=32)
+def _build(shape: Propeller, steps: int) -> CoefficientTable:
+    """Solve the nodes, then invert the splines through them."""
+    upper_j = LEAST_ADVANCE_RATIO + steps * _ADVANCE_RATIO_STEP
+    lower = (LEAST_ADVANCE_RATIO, float(LEAST_INCIDENCE), LEAST_TIP_MACH)
+    upper = (upper_j, float(GREATEST_INCIDENCE), GREATEST_TIP_MACH)
+    j, incidence, mach = (
+        np.linspace(a, b, n) for a, b, n in zip(lower, upper, _NODES, strict=True)
+    )
+    jg = j[:, None, None]
+    solved = coefficients(
+        shape,
+        jg,
+        blade_angle=effective_helix_angle(jg) + incidence[None, :, None],
+        tip_mach=mach[None, None, :],
+    )
+    nodes = np.stack((solved.power_coefficient, solved.thrust_coefficient, solved.angle_of_attack))
+    forward = SplineGrid.through(nodes, lower=lower, upper=upper)
+
+    jn, sn, mn = (
+        axis.reshape(shape_)
+        for axis, shape_ in zip(
+            (
+                np.linspace(lower[0], upper[0], _GOVERNED_NODES[0]),
+                np.linspace(0.0, 1.0, _GOVERNED_NODES[1]),
+                np.linspace(lower[2], upper[2], _GOVERNED_NODES[2]),
+            ),
+            ((-1, 1, 1), (1, -1, 1), (1, 1, -1)),
+            strict=True,
+        )
+    )
+    scan = np.linspace(lower[1], upper[1], _SCAN)
+    (power,) = forward.values((jn, scan[None, :, None], mn), (0,))
+    peak = _first_peak(power)
+    peak_power = np.take_along_axis(power, peak, axis=1)
+    least = _envelope(jn.ravel(), power[:, 0, :].max(axis=1), above=True)
+    greatest = _envelope(jn.ravel(), peak_power.min(axis=(1, 2)), above=False)
+
+    floor = _polynomial(least, jn)
+    wanted = floor + sn * (_polynomial(greatest, jn) - floor)
+
+    def excess(
+        angle: FloatArray, at_j: FloatArray, at_mach: FloatArray, power: FloatArray
+    ) -> FloatArray:
+        (absorbed,) = forward.values((at_j, angle, at_mach), (0,))
+        return absorbed - power
+
+    angle = find_root(
+        excess,
+        lower[1],
+        scan[peak],
+        arguments=(jn, mn, wanted),
+        tolerance=1e-10,
+    )
+    (thrust,) = forward.values((jn, angle, mn), (1,))
+    inverse = SplineGrid.through(
+        np.stack((angle, thrust)), lower=(lower[0], 0.0, lower[2]), upper=(upper[0], 1.0, upper[2])
+    )
+    return CoefficientTable(forward, inverse, least, greatest)
+
+
+def _polynomial(terms: tuple[float, float, float], j: FloatArray) -> FloatArray:
+    """Value of a parabola of J."""
+    c0, c1, c2 = terms
+    return c0 + j * (c1 + j * c2)
+
+
+def _envelope(j: FloatArray, values: FloatArray, *, above: bool) -> tuple[float, float, float]:
+    """Parabola of J through the trend of values, moved so that none lies beyond it."""
+    c2, c1, c0 = np.polyfit(j, values, 2)
+    gap = values - (c0 + j * (c1 + j * c2))
+    shift = gap.max() if above else gap.min()
+    inward = 1e-6 if above else -1e-6  # so that rounding cannot put a node beyond its bracket
+    return float(c0 + shift + inward), float(c1), float(c2)
+
+
+def _first_peak(power: FloatArray) -> NDArray[np.intp]:
+    """Index, along the second axis, up to which C_P rises without a break."""
+    rising = np.logical_and.accumulate(np.diff(power, axis=1) > 0.0, axis=1)
+    last: NDArray[np.intp] = rising.sum(axis=1, keepdims=True)
+    return last
