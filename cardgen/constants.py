@@ -21,8 +21,19 @@ from typing import Final
 GRAVITY: Final = 9.80665
 """Standard acceleration of free fall, exact [m/s²]; ISO 2533 table 1."""
 
-GAS_CONSTANT_DRY_AIR: Final = 287.05287
-"""Specific gas constant of dry air [J/(kg K)]; ISO 2533 table 1."""
+UNIVERSAL_GAS_CONSTANT: Final = 8.31432
+"""Gas constant that defines the standard atmosphere [J/(mol K)]; U.S. Standard Atmosphere 1976,
+table 2. Today's value is 20 ppm larger; changing it would shift every standard pressure."""
+
+MOLAR_MASS_DRY_AIR: Final = 28.9644e-3
+"""Molar mass of dry air at sea level [kg/mol]; U.S. Standard Atmosphere 1976, table 2."""
+
+GAS_CONSTANT_DRY_AIR: Final = UNIVERSAL_GAS_CONSTANT / MOLAR_MASS_DRY_AIR
+"""Specific gas constant of dry air, 287.05307 J/(kg K) [J/(kg K)]; from the two above.
+
+ISO 2533 gives 287.05287, from a molar mass of 28.964420 g/mol. The two standards differ by 0.7 ppm
+here and at most 1.3 ppm in pressure below 20 km; only the 1976 value meets the published 1976 table
+to its last digit."""
 
 HEAT_CAPACITY_RATIO: Final = 1.4
 """Ratio of the specific heats of air [-]; ISO 2533 table 1."""
@@ -50,9 +61,6 @@ LOWEST_STANDARD_ALTITUDE: Final = -5000.0
 
 HIGHEST_STANDARD_ALTITUDE: Final = 20000.0
 """Upper end of the isothermal layer, geopotential [m]; ISO 2533 table 2."""
-
-MOLAR_MASS_DRY_AIR: Final = 28.964420e-3
-"""Molar mass of dry air [kg/mol]; ISO 2533 table 1."""
 
 MOLAR_MASS_WATER: Final = 18.015268e-3
 """Molar mass of water [kg/mol]; IAPWS G5-01."""
@@ -137,3 +145,11 @@ FAHRENHEIT_STEP: Final = 5.0 / 9.0
 BRITISH_THERMAL_UNIT: Final = 4186.8 * POUND * FAHRENHEIT_STEP
 """British thermal unit, International Table, 1055.056 J [J]; NIST SP 811 B.8, from the
 International Table calorie of 4.1868 J."""
+
+# --- Engine test code ---------------------------------------------------------------------------
+
+POWER_TEST_PRESSURE: Final = 29.92 * INCH_OF_MERCURY
+"""Pressure of dry air that SAE J607 corrects power to [Pa]."""
+
+POWER_TEST_TEMPERATURE: Final = ZERO_CELSIUS + (60.0 - 32.0) * FAHRENHEIT_STEP
+"""Temperature that SAE J607 corrects power to, 60 °F [K]."""
