@@ -56,6 +56,14 @@ class CardTable:
 
 
 @dataclass(frozen=True, slots=True)
+class Section:
+    """A titled group of lines on the limits-and-notes page."""
+
+    title: str
+    lines: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True)
 class Decimals:
     """Decimal places that pressure, fuel flow and speed are printed with."""
 
@@ -76,3 +84,4 @@ class Card:
     stamps: tuple[str, ...]  # "DEMONSTRATION DATA, NOT FOR FLIGHT", "Not fitted: planning estimate only"
     notes: tuple[str, ...]  # guard bands, temperature assumption and its largest error, ...
     digest: str  # 64 hex digits; the first 12 are printed
+    sections: tuple[Section, ...] = ()  # limits in words with sources, gauges, evidence, cautions

@@ -1,0 +1,327 @@
+"""Which part of which table goes on which page, and every box of every page."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+from itertools import groupby
+from typing import Final
+
+from cardgen.errors import ReleaseError
+from cardgen.render.boxes import Page
+from cardgen.render.columns import (
+    LEAST_SETTING,
+    Part,
+    Style,
+    lay_out_grid,
+)
+from cardgen.render.edition import Edition
+from cardgen.render.grid import grid_height, place_grid
+from cardgen.render.legend import legend_height, legend_lines, place_legend
+from cardgen.render.marking import mark_page, place_foot, place_head
+from cardgen.render.notes import NoteLine, place_notes, share_out
+from cardgen.render.paper import Paper
+from cardgen.render.wording import note_sections, shows_temperature
+from cardgen.tables.card import Card, CardTable
+
+SETTING_SIZES: Final = (18.0, 17.0, 16.0, 15.0, 14.0, 13.0, LEAST_SETTING)
+BETWEEN_TABLES: Final = 8.0
+TABLES_PER_PAGE: Final = 2
+
+# Both say "page 99 of 99" while heights are measured, so that numbering cannot move a line.
+_MANY: Final = 99
+
+
+@dataclass(frozen=True, slots=True)
+class _Room:
+    """The part of a page that may be printed on [pt]; holes are left on a front."""
+
+    paper: Paper
+
+    @property
+    def measure(self) -> float:
+        return self.paper.width - self.paper.binder - self.paper.margin
+
+    @property
+    def top(self) -> float:
+        return self.paper.height - self.paper.margin
+
+    @property
+    def bottom(self) -> float:
+        return self.paper.margin
+
+    def left(self, page: int) -> float:
+        return self.paper.binder if page % 2 == 1 else self.paper.margin
+
+
+def lay_out(edition: Edition, paper: Paper) -> tuple[Page, ...]:
+    """Return every page of a card with everything on it.
+
+    Parameters
+    ----------
+    edition : Edition
+        What is being released [-]
+    paper : Paper
+        What it is printed on [-]
+
+    Returns
+    -------
+    tuple of Page
+        Pages of tables, then pages of limits and notes; two-up papers are not yet imposed [-]
+
+    Raises
+    ------
+    ReleaseError
+        Not even one row with its explanations fits the paper at the least sizes.
+    """
+    room = _Room(paper)
+    style, plan = _plan(edition, room)
+    sections = note_sections(edition.card, edition.identity)
+    notes = share_out(sections, measure=room.measure, height=_room_for_notes(edition, room))
+    pages = len(plan) + len(notes)
+    placed = [
+        _table_page(edition, room, style, plan, index=k, pages=pages) for k in range(len(plan))
+    ]
+    for k, lines in enumerate(notes):
+        placed.append(_notes_page(edition, room, lines, page=len(plan) + k + 1, pages=pages))
+    return tuple(placed)
+
+
+# --------------------------------------------------------------------------------------- planning
+
+Plan = tuple[tuple[Part, ...], ...]  # the parts on each page
+
+
+def _plan(edition: Edition, room: _Room) -> tuple[Style, Plan]:
+    """Return the style and the pages: fewest pages first, then the largest type.
+
+    One style serves the whole card, so that a number means the same at a glance on every page.
+    """
+    least = [_paginate(edition, room, Style(LEAST_SETTING, stacked)) for stacked in (False, True)]
+    fewest = min((len(plan) for plan in least if plan is not None), default=0)
+    for setting in SETTING_SIZES:
+        for stacked in (False, True):
+            style = Style(setting, stacked)
+            plan = _paginate(edition, room, style)
+            if plan is not None and len(plan) == fewest:
+                return style, plan
+    raise ReleaseError(
+        f"one row of a table with its explanations does not fit {room.paper.name} at the least"
+        " sizes of type; choose a larger paper or shorten the wording of the limits"
+    )
+
+
+def _paginate(edition: Edition, room: _Room, style: Style) -> Plan | None:
+    """Return the pages of a card in a style, None where a row or a column does not fit."""
+    pages: list[tuple[Part, ...]] = []
+    waiting: list[Part] = []  # a whole table that may share its page with the next
+    for index in range(len(edition.card.tables)):
+        parts = _parts(edition, room, style, index)
+        if parts is None:
+            return None
+        if len(parts) == 1:
+            if waiting and _fits(edition, room, style, (*waiting, *parts)):
+                waiting.extend(parts)
+            else:
+                if waiting:
+                    pages.append(tuple(waiting))
+                waiting = list(parts)
+            if len(waiting) < TABLES_PER_PAGE:
+                continue
+        if waiting:
+            pages.append(tuple(waiting))
+            waiting = []
+        if len(parts) > 1:
+            pages.extend((part,) for part in parts)
+    if waiting:
+        pages.append(tuple(waiting))
+    return tuple(pages)
+
+
+def _parts(edition: Edition, room: _Room, style: Style, index: int) -> tuple[Part, ...] | None:
+    """Return a table cut into as few parts as fit a page each, evenly."""
+    whole = _whole(edition, room, style, index)
+    for block in _column_blocks(edition, room, style, whole):
+        cut = _cut_rows(edition, room, style, block)
+        if cut is not None:
+            return cut
+    return None
+
+
+def _whole(edition: Edition, room: _Room, style: Style, index: int) -> Part:
+    """Return a whole table, its temperatures side by side if they fit, else under each other."""
+    table = edition.card.tables[index]
+    altitudes, temperatures = range(len(table.altitude)), range(len(table.isa_deviation))
+    rpm = range(len(table.rpm))
+    if not shows_temperature(edition.card) or len(temperatures) == 1:
+        return Part(index, tuple((a, 0) for a in altitudes), tuple((-1, r) for r in rpm))
+    across = Part(
+        index,
+        tuple((a, -1) for a in altitudes),
+        tuple((t, r) for t in temperatures for r in rpm),
+    )
+    if lay_out_grid(edition, across, style=style, measure=room.measure).columns.fits:
+        return across
+    return Part(
+        index,
+        tuple((a, t) for a in altitudes for t in temperatures),
+        tuple((-1, r) for r in rpm),
+    )
+
+
+def _column_blocks(
+    edition: Edition, room: _Room, style: Style, whole: Part
+) -> Sequence[tuple[Part, ...]]:
+    """Return ways to cut the columns so that each block fits across, fewest blocks first."""
+    ways = []
+    for blocks in range(1, len(whole.columns) + 1):
+        parts = tuple(
+            Part(whole.table, whole.rows, whole.columns[slice(*span)])
+            for span in _even_spans(len(whole.columns), blocks)
+        )
+        if all(
+            lay_out_grid(edition, part, style=style, measure=room.measure).columns.fits
+            for part in parts
+        ):
+            ways.append(parts)
+    return ways
+
+
+def _cut_rows(
+    edition: Edition, room: _Room, style: Style, blocks: tuple[Part, ...]
+) -> tuple[Part, ...] | None:
+    """Return blocks of columns cut into parts of a page each, None where one row is too high."""
+    parts: list[Part] = []
+    for block in blocks:
+        altitudes = [tuple(rows) for _, rows in groupby(block.rows, key=lambda row: row[0])]
+        cut = _cut_block(edition, room, style, block, altitudes)
+        if cut is None:  # the temperatures of one altitude do not fit a page together
+            cut = _cut_block(edition, room, style, block, [(row,) for row in block.rows])
+        if cut is None:
+            return None
+        parts.extend(cut)
+    return tuple(parts)
+
+
+def _cut_block(
+    edition: Edition,
+    room: _Room,
+    style: Style,
+    block: Part,
+    groups: Sequence[tuple[tuple[int, int], ...]],
+) -> tuple[Part, ...] | None:
+    """Return a block cut between groups of rows: fewest parts first, then evenly."""
+
+    def part(start: int, end: int) -> Part:
+        return replace(block, rows=tuple(row for group in groups[start:end] for row in group))
+
+    greedy: list[Part] = []
+    start = 0
+    while start < len(groups):
+        end = start
+        while end < len(groups) and _fits(edition, room, style, (part(start, end + 1),)):
+            end += 1
+        if end == start:
+            return None
+        greedy.append(part(start, end))
+        start = end
+    even = tuple(part(*span) for span in _even_spans(len(groups), len(greedy)))
+    if all(_fits(edition, room, style, (one,)) for one in even):
+        return even
+    return tuple(greedy)
+
+
+def _even_spans(length: int, count: int) -> list[tuple[int, int]]:
+    """Return `count` neighbouring spans of nearly equal length, the longer ones first."""
+    short, longer = divmod(length, count)
+    spans, start = [], 0
+    for k in range(count):
+        end = start + short + (1 if k < longer else 0)
+        spans.append((start, end))
+        start = end
+    return spans
+
+
+def _fits(edition: Edition, room: _Room, style: Style, parts: tuple[Part, ...]) -> bool:
+    """Return whether parts share one page with its marking and the meaning of their marks."""
+    card = edition.card
+    grids = [lay_out_grid(edition, part, style=style, measure=room.measure) for part in parts]
+    if not all(grid.columns.fits for grid in grids):
+        return False
+    whole = all(_is_whole(card, part) for part in parts)
+    continued = "" if whole else f"Continued from page {_MANY}. Continued on page {_MANY}."
+    marking = mark_page(
+        edition, _tables(card, parts), page=_MANY, pages=_MANY, measure=room.measure
+    )
+    height = (
+        marking.head_height
+        + marking.foot_height
+        + sum(grid_height(grid, continued) for grid in grids)
+        + BETWEEN_TABLES * len(grids)
+        + legend_height(legend_lines(card, parts, room.measure))
+    )
+    return height <= room.top - room.bottom
+
+
+def _is_whole(card: Card, part: Part) -> bool:
+    table = card.tables[part.table]
+    return len(part.rows) * len(part.columns) == table.state.size
+
+
+def _tables(card: Card, parts: Sequence[Part]) -> tuple[CardTable, ...]:
+    return tuple(card.tables[part.table] for part in parts)
+
+
+# ----------------------------------------------------------------------------------------- placing
+
+
+def _continued(card: Card, plan: Plan, index: int, part: Part) -> str:
+    """Return which pages hold the rest of a table."""
+    pages = [k + 1 for k, parts in enumerate(plan) for p in parts if p.table == part.table]
+    here = pages.index(index + 1)
+    pieces = []
+    if here > 0:
+        pieces.append(f"Continued from page {pages[here - 1]}.")
+    if here + 1 < len(pages):
+        pieces.append(f"Continued on page {pages[here + 1]}.")
+    return " ".join(pieces)
+
+
+def _table_page(
+    edition: Edition, room: _Room, style: Style, plan: Plan, *, index: int, pages: int
+) -> Page:
+    card, parts, page = edition.card, plan[index], index + 1
+    x, measure = room.left(page), room.measure
+    marking = mark_page(edition, _tables(card, parts), page=page, pages=pages, measure=measure)
+    boxes = list(place_head(marking, x=x, top=room.top, measure=measure))
+    y = room.top - marking.head_height
+    for part in parts:
+        grid = lay_out_grid(edition, part, style=style, measure=measure)
+        continued = _continued(card, plan, index, part)
+        boxes += place_grid(grid, x=x, top=y, continued=continued)
+        y -= grid_height(grid, continued) + BETWEEN_TABLES
+    boxes += place_legend(legend_lines(card, parts, measure), x=x, top=y + BETWEEN_TABLES)
+    boxes += place_foot(marking, x=x, bottom=room.bottom, measure=measure)
+    return Page(room.paper.width, room.paper.height, tuple(boxes))
+
+
+def _room_for_notes(edition: Edition, room: _Room) -> float:
+    """Return the height a page of notes has between its head and its foot."""
+    tables = edition.card.tables
+    marking = mark_page(edition, tables, page=_MANY, pages=_MANY, measure=room.measure)
+    return room.top - room.bottom - marking.head_height - marking.foot_height
+
+
+def _notes_page(
+    edition: Edition, room: _Room, lines: tuple[NoteLine, ...], *, page: int, pages: int
+) -> Page:
+    x, measure = room.left(page), room.measure
+    tables = edition.card.tables
+    marking = mark_page(edition, tables, page=page, pages=pages, measure=measure)
+    continued = f"Continued on page {page + 1}." if page < pages else ""
+    boxes = (
+        *place_head(marking, x=x, top=room.top, measure=measure),
+        *place_notes(lines, x=x, top=room.top - marking.head_height, continued=continued),
+        *place_foot(marking, x=x, bottom=room.bottom, measure=measure),
+    )
+    return Page(room.paper.width, room.paper.height, boxes)

@@ -1,0 +1,100 @@
+"""The limits-and-notes pages: broken into lines, shared out over pages, placed."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Final
+
+from cardgen.render.boxes import Box, Run
+from cardgen.render.columns import LEADING, NOTE
+from cardgen.render.fonts import wrap
+from cardgen.tables.card import Section
+
+SECTION_SIZE: Final = 11.0
+
+NoteLine = tuple[str, bool]  # text, and whether it heads a section
+
+
+def _blocks(sections: Sequence[Section], measure: float) -> list[list[NoteLine]]:
+    """Return blocks that stay together: a heading with its first line, then line by line."""
+    blocks: list[list[NoteLine]] = []
+    for section in sections:
+        pending: list[NoteLine] = [
+            (line, True) for line in wrap(section.title, "bold", size=SECTION_SIZE, measure=measure)
+        ]
+        for text in section.lines:
+            lines = wrap(text, "regular", size=NOTE, measure=measure - NOTE)
+            pending.extend((line, False) for line in lines)
+            blocks.append(pending)
+            pending = []
+    return blocks
+
+
+def _height(line: NoteLine) -> float:
+    return LEADING * (SECTION_SIZE + 4.0 if line[1] else NOTE)
+
+
+def share_out(
+    sections: Sequence[Section], *, measure: float, height: float
+) -> tuple[tuple[NoteLine, ...], ...]:
+    """Return the lines of each page of notes; a block longer than a page is broken.
+
+    Parameters
+    ----------
+    sections : sequence of Section
+        What the notes say [-]
+    measure, height : float
+        Room across and down [pt]
+
+    Returns
+    -------
+    tuple of tuple of (str, bool)
+        Per page its lines, and whether each heads a section [-]
+    """
+    limit = height - LEADING * NOTE  # room to say that the notes go on
+    pages: list[list[NoteLine]] = [[]]
+    used = 0.0
+    for block in _blocks(sections, measure):
+        if used + sum(_height(line) for line in block) > limit and pages[-1]:
+            pages.append([])
+            used = 0.0
+        for line in block:
+            if used + _height(line) > limit and pages[-1]:
+                pages.append([])
+                used = 0.0
+            pages[-1].append(line)
+            used += _height(line)
+    return tuple(tuple(page) for page in pages)
+
+
+def place_notes(
+    lines: Sequence[NoteLine], *, x: float, top: float, continued: str
+) -> tuple[Box, ...]:
+    """Return the boxes of one page of notes.
+
+    Parameters
+    ----------
+    lines : sequence of (str, bool)
+        Lines, and whether each heads a section [-]
+    x, top : float
+        Upper left corner [pt]
+    continued : str
+        Where the notes go on, "" where they end [-]
+
+    Returns
+    -------
+    tuple of Box
+        Boxes in reading order [-]
+    """
+    boxes: list[Box] = []
+    y = top
+    for line in lines:
+        text, heads = line
+        y -= _height(line)
+        if heads:
+            boxes.append(Run(x, y, text, "bold", SECTION_SIZE))
+        else:
+            boxes.append(Run(x + NOTE, y, text, "regular", NOTE))
+    if continued:
+        boxes.append(Run(x, y - LEADING * NOTE, continued, "bold", NOTE))
+    return tuple(boxes)

@@ -1,0 +1,103 @@
+"""Draws placed boxes as a PDF; the only module that knows the PDF library."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from io import BytesIO
+
+from reportlab import rl_config
+from reportlab.pdfbase import pdfmetrics
+from reportlab.pdfbase.ttfonts import TTFont
+from reportlab.pdfgen.canvas import Canvas
+
+from cardgen.render.boxes import Box, Frame, Hatch, Page, Rule, Run, Tint
+from cardgen.render.fonts import FACES
+
+_NAMES = {"regular": "CardRegular", "bold": "CardBold"}
+
+
+@dataclass(frozen=True, slots=True)
+class Metadata:
+    """What the file says about itself."""
+
+    title: str
+    subject: str
+    keywords: str
+
+
+def draw(pages: Sequence[Page], metadata: Metadata, *, compress: bool = True) -> bytes:
+    """Return the pages as a PDF.
+
+    Parameters
+    ----------
+    pages : sequence of Page
+        Sheets in order [-]
+    metadata : Metadata
+        Title, subject, keywords [-]
+    compress : bool
+        Whether page contents are compressed [-]
+
+    Returns
+    -------
+    bytes
+        The file; the same pages give the same bytes [-]
+    """
+    for face, path in FACES.items():
+        # A fresh font each time: the library numbers glyph subsets per font object, so a font
+        # shared between two files would let the first change the bytes of the second.
+        pdfmetrics.registerFont(TTFont(_NAMES[face], str(path)))
+    buffer = BytesIO()
+    canvas = Canvas(buffer, pageCompression=int(compress), invariant=1)
+    canvas.setTitle(metadata.title)
+    canvas.setSubject(metadata.subject)
+    canvas.setKeywords(metadata.keywords)
+    canvas.setAuthor("cardgen")
+    canvas.setCreator("cardgen")
+    canvas.setProducer("cardgen")
+    for page in pages:
+        canvas.setPageSize((page.width, page.height))
+        for box in page.boxes:
+            _draw_box(canvas, box)
+        canvas.showPage()
+    canvas.save()
+    return buffer.getvalue()
+
+
+def _draw_box(canvas: Canvas, box: Box) -> None:
+    if isinstance(box, Run):
+        canvas.setFillGray(0.0)
+        canvas.setFont(_NAMES[box.face], box.size)
+        canvas.drawString(box.x, box.y, box.text)
+    elif isinstance(box, Rule):
+        canvas.setStrokeGray(0.0)
+        canvas.setLineWidth(box.thickness)
+        canvas.line(box.x, box.y, box.to_x, box.to_y)
+    elif isinstance(box, Tint):
+        canvas.setFillGray(box.grey)
+        canvas.rect(box.x, box.y, box.width, box.height, stroke=0, fill=1)
+    elif isinstance(box, Frame):
+        canvas.setStrokeGray(0.0)
+        canvas.setLineWidth(box.thickness)
+        canvas.rect(box.x, box.y, box.width, box.height, stroke=1, fill=0)
+    else:
+        _draw_hatch(canvas, box)
+
+
+def _draw_hatch(canvas: Canvas, box: Hatch) -> None:
+    canvas.saveState()
+    canvas.setStrokeGray(0.0)
+    canvas.setLineWidth(box.thickness)
+    path = canvas.beginPath()
+    path.rect(box.x, box.y, box.width, box.height)
+    canvas.clipPath(path, stroke=1, fill=0)
+    step = box.spacing * 2.0**0.5
+    start = box.x - box.height
+    for k in range(int((box.width + box.height) / step) + 1):
+        x = start + k * step
+        canvas.line(x, box.y, x + box.height, box.y + box.height)
+    canvas.restoreState()
+
+
+# The library would put the clock into a file were it not told otherwise everywhere.
+rl_config.invariant = 1

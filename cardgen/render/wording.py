@@ -1,0 +1,294 @@
+"""Every printed word and number of a card, so that page, screen and read-back say the same."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable
+from typing import Final
+
+from cardgen.errors import ReleaseError
+from cardgen.profile.document import Identity, PartIdentity
+from cardgen.tables.card import Card, CardTable, CellState, Section
+from cardgen.units import to_unit
+
+SUPPLEMENTARY: Final = "SUPPLEMENTARY. The approved flight manual, placards and markings govern."
+DIGEST_DIGITS: Final = 12
+FULL_THROTTLE: Final = "FT"
+OUT_OF_REACH: Final = "\N{EM DASH}"
+OUTSIDE_EVIDENCE: Final = "?"
+
+_SIGNS: Final[dict[str, str]] = {"degC": "°C", "degF": "°F"}
+_ALTITUDE: Final = {
+    "density": ("DA", "density altitude"),
+    "pressure": ("PA", "pressure altitude"),
+}
+
+
+def number(value: float, decimals: int = 0) -> str:
+    """Return a number as printed.
+
+    Parameters
+    ----------
+    value : float
+        A number in the unit of the card, already rounded to the safe side [-]
+    decimals : int
+        Decimal places [-]
+
+    Returns
+    -------
+    str
+        Digits with a decimal point; a true minus sign, never a negative zero [-]
+
+    Raises
+    ------
+    ReleaseError
+        The value is not finite: a cell that holds no number must say so in its state.
+    """
+    if not math.isfinite(value):
+        raise ReleaseError(f"a cell said to hold a value holds {value}; nothing was written")
+    text = f"{value:.{decimals}f}"
+    if float(text) == 0.0:
+        text = text.removeprefix("-")
+    return text.replace("-", "\N{MINUS SIGN}")
+
+
+def sign(unit: str) -> str:
+    """Return a unit as printed, "°C" for "degC".
+
+    Parameters
+    ----------
+    unit : str
+        Name of the unit [-]
+
+    Returns
+    -------
+    str
+        Its printed sign [-]
+    """
+    return _SIGNS.get(unit, unit)
+
+
+def altitude_label(card: Card) -> str:
+    """Return the head of the altitude column, such as "DA ft"."""
+    return f"{_ALTITUDE[card.choices.altitude_kind][0]} {sign(card.choices.units.altitude)}"
+
+
+def shows_temperature(card: Card) -> bool:
+    """Return whether rows carry an outside air temperature: those by pressure altitude do."""
+    return card.choices.altitude_kind == "pressure"
+
+
+def temperature_label(card: Card) -> str:
+    """Return the head of the temperature column, such as "OAT °C"."""
+    return f"OAT {sign(card.choices.units.temperature)}"
+
+
+def deviation_name(card: Card, deviation: float) -> str:
+    """Return the name of a temperature, such as "ISA +20 °C"."""
+    if deviation == 0.0:
+        return "ISA"
+    plus = "+" if deviation > 0.0 else ""
+    return f"ISA {plus}{number(deviation)} {sign(card.choices.units.temperature)}"
+
+
+def cell_texts(card: Card, table: CardTable, at: tuple[int, int, int]) -> tuple[str, ...]:
+    """Return what is printed in one cell, in reading order.
+
+    Parameters
+    ----------
+    card : Card
+        The card [-]
+    table : CardTable
+        One of its tables [-]
+    at : tuple of int
+        Altitude, temperature and rpm index [-]
+
+    Returns
+    -------
+    tuple of str
+        Pressure, the full-throttle mark if any, fuel flow and speed; or one mark [-]
+    """
+    state = CellState(int(table.state[at]))
+    if state is CellState.FORBIDDEN:
+        return (reason_letter(card, table, at),)
+    if state is CellState.OUT_OF_REACH:
+        return (OUT_OF_REACH,)
+    if state is CellState.OUTSIDE_EVIDENCE:
+        return (OUTSIDE_EVIDENCE,)
+    pressure = number(float(table.manifold_pressure[at]), card.decimals.pressure)
+    flow = number(float(table.fuel_flow[at]), card.decimals.fuel_flow)
+    speed = number(float(table.true_airspeed[at]), card.decimals.speed)
+    if state is CellState.FULL_THROTTLE:
+        return pressure, full_throttle_mark(float(table.percent_power[at])), flow, speed
+    return pressure, flow, speed
+
+
+def reason_letter(card: Card, table: CardTable, at: tuple[int, int, int]) -> str:
+    """Return the letter of a forbidden cell."""
+    index = int(table.reason[at])
+    if not 0 <= index < len(card.reasons):
+        raise ReleaseError("a forbidden cell names no reason; nothing was written")
+    return card.reasons[index].letter
+
+
+def full_throttle_mark(percent_power: float) -> str:
+    """Return the mark of a full-throttle cell with the power it gives, rounded down [%]."""
+    return f"{FULL_THROTTLE} {number(math.floor(percent_power + 1e-9))}%"
+
+
+def percent(power_fraction: float) -> str:
+    """Return an asked power such as "65 %"."""
+    return f"{power_fraction * 100.0:.4g} %"
+
+
+def mass_text(card: Card, mass: float) -> str:
+    """Return a mass [kg] in the unit of the card."""
+    unit = card.choices.units.mass
+    return f"{number(float(to_unit(mass, unit, dimension='mass')))} {sign(unit)}"
+
+
+def basis_text(table: CardTable) -> str:
+    """Return how the mixture is set."""
+    return f"Mixture: {table.mixture_basis or 'basis not stated'}"
+
+
+def legend(card: Card, states: Iterable[tuple[CellState, int]]) -> tuple[tuple[str, str], ...]:
+    """Return the marks that occur and what each means.
+
+    Parameters
+    ----------
+    card : Card
+        The card [-]
+    states : iterable of (CellState, int)
+        State and reason index of the cells on the page [-]
+
+    Returns
+    -------
+    tuple of (str, str)
+        Mark and meaning: forbidden letters first, then the others [-]
+    """
+    occurring = set(states)
+    lines: list[tuple[str, str]] = []
+    for index, reason in enumerate(card.reasons):
+        if (CellState.FORBIDDEN, index) in occurring:
+            source = f" Source: {reason.source}" if reason.source else " Source: not stated"
+            lines.append((reason.letter, f"Forbidden. {reason.text.rstrip('.')}.{source}"))
+    kinds = {state for state, _ in occurring}
+    if CellState.FULL_THROTTLE in kinds:
+        lines.append(
+            (
+                FULL_THROTTLE,
+                "Full throttle: the power asked is out of reach. The boxed percentage is the power "
+                "it gives.",
+            )
+        )
+    if CellState.OUT_OF_REACH in kinds:
+        lines.append((OUT_OF_REACH, "Out of reach: no level flight at this setting."))
+    if CellState.OUTSIDE_EVIDENCE in kinds:
+        lines.append(
+            (OUTSIDE_EVIDENCE, "Outside the evidence: nothing measured or approved near it.")
+        )
+    return tuple(lines)
+
+
+def part_text(kind: str, part: PartIdentity) -> str:
+    """Return an engine or propeller with its serial number."""
+    return f"{kind} {part.model} s/n {part.serial or 'not stated'}"
+
+
+def configuration(identity: Identity) -> str:
+    """Return the configuration the numbers belong to."""
+    return f"{part_text('Engine', identity.engine)}; {part_text('propeller', identity.propeller)}"
+
+
+def units_text(card: Card) -> str:
+    """Return the units of every column in words."""
+    units = card.choices.units
+    short, long = _ALTITUDE[card.choices.altitude_kind]
+    parts = [
+        f"manifold pressure {sign(units.pressure)}",
+        f"fuel flow {sign(units.fuel_flow)}",
+        f"true airspeed {sign(units.speed)}",
+        f"{long} ({short}) {sign(units.altitude)}",
+    ]
+    if shows_temperature(card):
+        parts.append(f"outside air temperature (OAT) {sign(units.temperature)}")
+    return "Units: " + ", ".join(parts)
+
+
+def tolerance_text(card: Card, tables: Iterable[CardTable]) -> str:
+    """Return the largest 95 % tolerance of the tables, rounded up."""
+    stated = [table.tolerance for table in tables]
+    known = [tolerance for tolerance in stated if tolerance is not None]
+    if not known or len(known) < len(stated):
+        return "Tolerance: not known (model not fitted)"
+    units, decimals = card.choices.units, card.decimals
+    largest = [max(column) for column in zip(*known, strict=True)]
+    pieces = [
+        f"±{number(_up(value, places), places)} {sign(unit)}"
+        for value, places, unit in zip(
+            largest,
+            (decimals.pressure, decimals.fuel_flow, decimals.speed),
+            (units.pressure, units.fuel_flow, units.speed),
+            strict=True,
+        )
+    ]
+    return f"Tolerance (95 %, largest on this page): {', '.join(pieces)}"
+
+
+def _up(value: float, decimals: int) -> float:
+    """Return the value rounded up; 1e-9 keeps a value already rounded where it is."""
+    step: float = 10.0**decimals
+    return math.ceil(value * step - 1e-9) / step
+
+
+def issue_text(identity: Identity, issue: int) -> str:
+    """Return issue number and date."""
+    return f"Issue {issue}, {identity.date}"
+
+
+def page_text(page: int, pages: int) -> str:
+    """Return the page number out of how many."""
+    return f"page {page} of {pages}"
+
+
+def digest_text(card: Card, issue: int, replaces: int | None) -> str:
+    """Return the profile digest, and which issue this one voids."""
+    void = f"; replaces issue {replaces}, which is void" if replaces is not None else ""
+    return f"Profile {card.digest[:DIGEST_DIGITS]}, issue {issue}{void}"
+
+
+def note_sections(card: Card, identity: Identity) -> tuple[Section, ...]:
+    """Return the sections of the limits-and-notes pages.
+
+    Parameters
+    ----------
+    card : Card
+        The card, whose own sections come first [-]
+    identity : Identity
+        Whose card it is [-]
+
+    Returns
+    -------
+    tuple of Section
+        Sections that have something to say [-]
+    """
+    tables = dict.fromkeys(
+        f"{percent(table.power_fraction)}, {table.mixture}, {mass_text(card, table.mass)}. "
+        f"{basis_text(table)}"
+        for table in card.tables
+    )
+    handbook = str(identity.handbook)
+    aircraft = (
+        f"Type {identity.aircraft_type}, s/n {identity.serial or 'not stated'}",
+        *((f"Operator: {identity.operator}",) if identity.operator else ()),
+        *(f"Approval: {approval}" for approval in identity.approvals),
+        f"Approved flight manual: {handbook or 'not stated'}",
+    )
+    sections = (
+        *card.sections,
+        Section("Notes", card.notes),
+        Section("Tables of this card", tuple(tables)),
+        Section("Aircraft", aircraft),
+    )
+    return tuple(section for section in sections if section.lines)
