@@ -1,8 +1,8 @@
 """The kinds of limit a profile can state; each carries its wording and its source.
 
 Two limits of one kind that share a `name` are the same limit as two sources state it: the more
-restrictive is applied and both are shown. Every pressure and rpm here is a *true* value unless
-the source marks an instrument; gauge error is applied by `cardgen.limits.gauges`.
+restrictive is applied and both are shown. Every pressure and rpm here is a *true* value; what the
+gauges read is widened by their error in `cardgen.limits.gauges`.
 """
 
 from __future__ import annotations
@@ -54,8 +54,9 @@ class RestrictedRpm:
     """Rpm range closed to continuous operation, its ends included.
 
     Where `above_manifold_pressure` is given the range is closed only at and above that pressure
-    [Pa], where `below_manifold_pressure` is given only at and below it; a `phase` other than
-    "cruise" and None makes the range a note rather than a bar to cruise.
+    [Pa], where `below_manifold_pressure` is given only at and below it, with both between them (or
+    outside them, where "above" is the greater). A `phase` known to be another than cruise, such as
+    "ground" or "descent", makes the range a note rather than a bar.
     """
 
     name: str
@@ -70,7 +71,11 @@ class RestrictedRpm:
 
 @dataclass(frozen=True, slots=True)
 class ManifoldPressureCurve:
-    """Greatest continuous manifold pressure [Pa] against rpm, linear between points."""
+    """Greatest continuous manifold pressure [Pa] against rpm, linear between points.
+
+    Beyond its ends no continuous operation is charted, so none is allowed. Two points at one rpm
+    are a step.
+    """
 
     name: str
     rpm: tuple[float, ...]
@@ -81,7 +86,11 @@ class ManifoldPressureCurve:
 
 @dataclass(frozen=True, slots=True)
 class LeastManifoldPressure:
-    """Least manifold pressure [Pa] against rpm, linear between points."""
+    """Least manifold pressure [Pa] against rpm, linear between points.
+
+    One point is a number that holds at every rpm; a pressure of 0 says that an rpm has no limit;
+    beyond the ends of a curve it is *unknown*. Two points at one rpm are a step.
+    """
 
     name: str
     rpm: tuple[float, ...]
@@ -92,7 +101,7 @@ class LeastManifoldPressure:
 
 @dataclass(frozen=True, slots=True)
 class Rating:
-    """A rating of the engine: power [W] at rpm, with manifold pressure [Pa] and time [s] if limited."""
+    """A rating of the engine: power [W] at rpm; manifold pressure [Pa] and time [s] if limited."""
 
     name: str
     power: float
@@ -116,7 +125,11 @@ class RpmRange:
 
 @dataclass(frozen=True, slots=True)
 class LeaningCeiling:
-    """Greatest share of rated power [-] and manifold pressure [Pa] at which a mixture is allowed."""
+    """Greatest share of rated power [-] and manifold pressure [Pa] that a mixture is allowed at.
+
+    A mixture whose source sets no ceiling (full rich, say) is stated with neither number; one that
+    no ceiling names is *unknown*.
+    """
 
     name: str
     mixture: str
@@ -128,7 +141,10 @@ class LeaningCeiling:
 
 @dataclass(frozen=True, slots=True)
 class AltitudeSchedule:
-    """Greatest manifold pressure [Pa] against pressure altitude [m], linear between points."""
+    """Greatest manifold pressure [Pa] against pressure altitude [m], linear between points.
+
+    Beyond its ends nothing is charted, so nothing is allowed.
+    """
 
     name: str
     pressure_altitude: tuple[float, ...]
