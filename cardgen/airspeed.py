@@ -367,7 +367,7 @@ def airspeed_from_ground_legs(ground_speed: npt.ArrayLike, track: npt.ArrayLike)
     legs = speed.shape[-1] if speed.ndim else 1
     if legs < 3:
         raise DomainError(f"{legs} leg(s) given; expected three or more on spread tracks")
-    speed = np.where((speed > 0.0) & np.isfinite(direction), speed, np.nan)
+    speed = np.where((speed > 0.0) & np.isfinite(speed), speed, np.nan)
     direction = np.where(np.isfinite(direction), direction, np.nan)
     north, east = speed * np.cos(direction), speed * np.sin(direction)
 

@@ -132,9 +132,10 @@ def test_supersonic_or_impossible_flow_has_no_number(value: float) -> None:
 
 def test_mach_one_itself_is_inside_and_returns() -> None:
     """Rounding at the edge of the domain must not lose the point."""
-    speed = speed_of_sound(260.0)
-    calibrated = calibrated_airspeed(speed, 60000.0, temperature=260.0)
-    assert true_airspeed(calibrated, 60000.0, temperature=260.0) == pytest.approx(speed, rel=1e-9)
+    t, p = np.linspace(210.0, 325.0, 500), np.linspace(20000.0, 101000.0, 500)
+    calibrated = calibrated_airspeed(speed_of_sound(t), p, temperature=t)
+    back = true_airspeed(calibrated, p, temperature=t)
+    np.testing.assert_allclose(back, speed_of_sound(t), rtol=1e-9)
 
 
 @given(rows=st.lists(st.tuples(speeds, pressures, temperatures), min_size=1, max_size=5))
@@ -224,10 +225,15 @@ def test_four_ground_legs_meet_the_published_example() -> None:
 
     The printed result is the mean over the four sets of three legs.
     """
-    legs = airspeed_from_ground_legs(
-        np.array([178.0, 185.0, 188.0, 184.0]) * KNOT, np.radians([178.0, 82.0, 355.0, 265.0])
-    )
+    ground_speed = np.array([178.0, 185.0, 188.0, 184.0]) * KNOT
+    track = np.radians([178.0, 82.0, 355.0, 265.0])
+    legs = airspeed_from_ground_legs(ground_speed, track)
     assert legs.true_airspeed / KNOT == pytest.approx(183.72669557, rel=0.0, abs=1e-8)
+
+    sets = np.array([[0, 1, 2], [0, 1, 3], [0, 2, 3], [1, 2, 3]])
+    alone = airspeed_from_ground_legs(ground_speed[sets], track[sets]).true_airspeed
+    assert legs.true_airspeed == pytest.approx(np.mean(alone))
+    assert legs.scatter == pytest.approx(np.std(alone, ddof=1))
 
 
 def _legs(
@@ -281,13 +287,34 @@ def test_scatter_shows_a_leg_that_was_flown_faster() -> None:
     assert 0.3 < legs.scatter < 3.0
 
 
+@pytest.mark.parametrize("order", [(0, 1, 2), (1, 0, 2), (2, 0, 1)])
 @pytest.mark.parametrize("spread_deg", [0.0, 5.0, 30.0, 50.0])
-def test_tracks_with_little_spread_give_no_number(spread_deg: float) -> None:
+def test_tracks_with_little_spread_give_no_number(
+    spread_deg: float, order: tuple[int, ...]
+) -> None:
     """Three legs within an arc magnify a ground-speed error; no airspeed is better than that."""
-    track = np.radians([40.0, 40.0 + spread_deg, 40.0 + 2.0 * spread_deg])
-    legs = airspeed_from_ground_legs(np.array([60.0, 61.0, 60.0]), track)
+    track = np.radians(40.0 + spread_deg * np.array(order))
+    legs = airspeed_from_ground_legs(np.array([60.0, 60.0, 60.0]), track)
     for value in (legs.true_airspeed, legs.wind_speed, legs.wind_direction, legs.scatter):
         assert np.isnan(value)
+
+
+@pytest.mark.parametrize("spread_deg", [60.0, 90.0, 120.0])
+def test_tracks_as_flown_in_practice_give_a_number(spread_deg: float) -> None:
+    """Turns of 60°, 90° and 120° between three legs are all enough; common practice."""
+    track = np.radians(40.0 + spread_deg * np.arange(3))
+    assert airspeed_from_ground_legs([60.0, 60.0, 60.0], track).true_airspeed == pytest.approx(60.0)
+
+
+@pytest.mark.parametrize(
+    ("speed", "track"), [(-60.0, 0.0), (0.0, 0.0), (np.inf, 0.0), (60.0, np.inf), (60.0, np.nan)]
+)
+def test_leg_that_cannot_be_spoils_only_the_sets_it_is_in(speed: float, track: float) -> None:
+    """A missing or impossible leg is left out, the other three still give their answer."""
+    ground_speed, tracks = _legs(60.0, 5.0, 1.0, np.radians([0.0, 120.0, 240.0]))
+    legs = airspeed_from_ground_legs([*ground_speed, speed], [*tracks, track])
+    assert legs.true_airspeed == pytest.approx(60.0)
+    assert np.isnan(legs.scatter)
 
 
 def test_repeated_track_leaves_out_only_the_sets_it_spoils() -> None:

@@ -213,6 +213,16 @@ def test_pressure_altitude_undoes_standard_pressure(altitude: float) -> None:
     assert pressure_altitude(standard_pressure(altitude)) == pytest.approx(altitude, abs=1e-7)
 
 
+@pytest.mark.parametrize("offset", [-100.0, -30.0, -0.01, 0.0, 0.01, 30.0, 100.0])
+def test_altitudes_invert_close_to_the_tropopause(offset: float) -> None:
+    """Each side of the tropopause is solved with its own layer's formula."""
+    altitude = constants.TROPOPAUSE + offset
+    pressure = standard_pressure(altitude)
+    assert pressure_altitude(pressure) == pytest.approx(altitude, abs=1e-8)
+    there = density_altitude(pressure, standard_temperature(altitude))
+    assert there == pytest.approx(altitude, abs=1e-8)
+
+
 @given(altitude=altitudes)
 def test_density_altitude_on_a_standard_day_is_pressure_altitude(altitude: float) -> None:
     """On a standard day the two altitudes are the same thing."""
@@ -230,6 +240,26 @@ def test_pressure_altitude_at_density_altitude_undoes_density_altitude(
     assume(np.isfinite(there))
     back = pressure_altitude_at_density_altitude(there, deviation)
     assert back == pytest.approx(altitude, abs=1e-6)
+
+
+def test_density_altitude_inverts_at_extreme_temperatures() -> None:
+    """Deviations no atmosphere shows still converge, wherever the tropopause lies on the way."""
+    altitude, deviation = np.meshgrid(
+        np.linspace(-5000.0, 20000.0, 101), [-100.0, -60.0, 60.0, 100.0]
+    )
+    there = pressure_altitude_at_density_altitude(altitude, deviation)
+    temperature = standard_temperature(there) + deviation
+    back = density_altitude(standard_pressure(there), temperature)
+    inside = np.isfinite(there)
+    assert inside.mean() > 0.8
+    np.testing.assert_allclose(back[inside], altitude[inside], rtol=0.0, atol=1e-8)
+
+
+def test_rounding_at_the_ends_of_the_range_stays_inside() -> None:
+    """20 km that went through feet and back is still 20 km; a millimetre more is outside."""
+    ends = np.array([LOWEST_STANDARD_ALTITUDE - 1e-9, HIGHEST_STANDARD_ALTITUDE + 1e-9])
+    assert np.all(np.isfinite(standard_pressure(ends)))
+    assert np.all(np.isnan(standard_pressure(ends + np.array([-1e-3, 1e-3]))))
 
 
 @given(field=st.floats(-400.0, 4500.0), setting_inhg=st.floats(28.0, 31.0))
