@@ -1,22 +1,32 @@
-"""An aircraft is an engine, a propeller and an airframe, flown in a condition at a setting."""
+"""An aircraft is an engine, a propeller and an airframe; it flies in a condition at a setting."""
 
 from __future__ import annotations
 
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
+import numpy.typing as npt
 
 from cardgen.airframe import Airframe
 from cardgen.engine import Engine, Mixture
 from cardgen.propeller import Propeller
 
-Floats = float | NDArray[np.float64]
+Floats = float | npt.NDArray[np.float64]
 
 
 @dataclass(frozen=True, slots=True)
 class Aircraft:
-    """Engine, propeller and airframe."""
+    """Engine, propeller and airframe.
+
+    Parameters
+    ----------
+    engine : Engine
+        The engine [-]
+    propeller : Propeller
+        The propeller [-]
+    airframe : Airframe
+        The airframe [-]
+    """
 
     engine: Engine
     propeller: Propeller
@@ -47,12 +57,30 @@ class Condition:
 
 @dataclass(frozen=True, slots=True)
 class Setting:
-    """What the pilot sets: true engine rpm, mixture, and power or manifold pressure.
+    """What the pilot sets, in true values.
 
-    Exactly one of `power` [W] and `manifold_pressure` [Pa] is given; np.inf means full throttle.
+    Parameters
+    ----------
+    rpm : float or ndarray
+        Crankshaft speed [rpm]
+    mixture : Mixture
+        The mixture [-]
+    power : float or ndarray, optional
+        Brake power asked; the throttle is where it gives it, or wide open [W]
+    manifold_pressure : float or ndarray, optional
+        Manifold pressure asked, infinite for full throttle [Pa]
+
+    Notes
+    -----
+    Exactly one of `power` and `manifold_pressure` is given.
     """
 
     rpm: Floats
     mixture: Mixture
     power: Floats | None = None
     manifold_pressure: Floats | None = None
+
+    def __post_init__(self) -> None:
+        """Refuse a setting that asks for both or neither."""
+        if (self.power is None) == (self.manifold_pressure is None):
+            raise ValueError("a setting asks for power or for manifold pressure, one of the two")
