@@ -39,7 +39,7 @@ class Identity:
 
 @dataclass(frozen=True, slots=True)
 class FuelSupply:
-    """Usable fuel and reserve [m3], None where the profile does not state them."""
+    """Usable fuel and the reserve that range and endurance leave of it [m3]."""
 
     usable: float
     reserve: float
@@ -53,13 +53,15 @@ class Profile:
     name: str
     identity: Identity
     aircraft: Aircraft
+    gross_mass: float  # [kg]
     percent_of: Rating
     mixtures: tuple[Mixture, ...]
+    as_flown: tuple[str, ...]  # names of mixtures whose fuel-air ratio only a fit can tell
     limits: Limits
     gauges: Gauges
     card: CardChoices
     fuel: FuelSupply | None
     winds: tuple[float, ...]  # head positive [m/s]
     evidence: tuple[Path, ...]
-    digest: str  # of everything that can change a number
-    part_digests: dict[str, str]  # engine, propeller, airframe, mixtures, limits, gauges, card
+    digest: str  # of everything that can change a number, so not of the identity
+    part_digests: dict[str, str]  # by part, see `cardgen.profile.digest`

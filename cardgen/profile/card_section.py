@@ -1,0 +1,165 @@
+"""The `card` of a profile: what its pages show, and in which units."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import Annotated, Literal
+
+from pydantic import Field, Tag, model_validator
+
+from cardgen.profile.section import Section, by_shape, require_increasing
+from cardgen.profile.values import (
+    Altitude,
+    Choice,
+    Fraction,
+    IsaDeviation,
+    Mass,
+    Name,
+    PercentPower,
+    Rpm,
+    Wind,
+    wrong,
+)
+from cardgen.tables.choices import CardChoices, UnitSet
+
+UNIT_SETS = {
+    "us": UnitSet(),
+    "metric": UnitSet(
+        pressure="hPa", fuel_flow="l/h", speed="kt", temperature="degC", altitude="ft", mass="kg"
+    ),
+}
+"""Sets of units by name; `metric` keeps feet and knots, as flown nearly everywhere."""
+
+
+class UnitsSection(Section):
+    """Units of the card: a set, and single units that depart from it."""
+
+    set: Annotated[str, Choice(tuple(UNIT_SETS))] = Field(
+        "us", description="Set that the units left out here come from"
+    )
+    pressure: Annotated[str, Choice(("inHg", "hPa", "kPa", "mmHg", "mbar"))] | None = Field(
+        None, description="Unit of manifold pressure"
+    )
+    fuel_flow: Annotated[str, Choice(("gal/h", "l/h", "impgal/h"))] | None = Field(
+        None, description="Unit of fuel flow"
+    )
+    speed: Annotated[str, Choice(("kt", "mph", "km/h"))] | None = Field(
+        None, description="Unit of airspeed"
+    )
+    temperature: Annotated[str, Choice(("degC", "degF"))] | None = Field(
+        None, description="Unit of temperature"
+    )
+    altitude: Annotated[str, Choice(("ft", "m"))] | None = Field(
+        None, description="Unit of altitude"
+    )
+    mass: Annotated[str, Choice(("lb", "kg"))] | None = Field(None, description="Unit of mass")
+
+    def unit_set(self) -> UnitSet:
+        """Return the units."""
+        stated = {
+            key: value
+            for key in ("pressure", "fuel_flow", "speed", "temperature", "altitude", "mass")
+            if (value := getattr(self, key)) is not None
+        }
+        return replace(UNIT_SETS[self.set], **stated)
+
+
+_ORDERED = ("rpm", "percent_powers", "altitudes", "temperatures", "masses", "winds")
+
+
+class CardSection(Section):
+    """Columns, rows, pages, units and paper of the card."""
+
+    rpm: list[Rpm] = Field(
+        min_length=1, max_length=6, description="Rpm columns as the tachometer reads, increasing"
+    )
+    percent_powers: list[PercentPower] = Field(
+        min_length=1, max_length=8, description="Percent powers, increasing; one table each"
+    )
+    altitudes: list[Altitude] = Field(
+        min_length=1, max_length=12, description="Altitude rows, increasing"
+    )
+    altitude_kind: Annotated[str, Choice(("density", "pressure"))] = Field(
+        "density", description="What the altitude rows are: density or pressure altitude"
+    )
+    temperatures: list[IsaDeviation] = Field(
+        [0.0],
+        min_length=1,
+        max_length=5,
+        description="Deviations from the standard temperature, increasing; "
+        "columns of a pressure-altitude card",
+    )
+    masses: list[Mass] | None = Field(
+        None,
+        min_length=1,
+        max_length=4,
+        description="Aircraft masses, increasing; the gross mass where left out",
+    )
+    mixtures: list[Name] | None = Field(
+        None,
+        min_length=1,
+        max_length=6,
+        description="Names of the mixtures shown, in this order; all where left out",
+    )
+    winds: list[Wind] = Field(
+        [0.0],
+        min_length=1,
+        max_length=7,
+        description="Winds along the track for distances, headwind positive, increasing",
+    )
+    relative_humidity: Fraction = Field(0.0, description="Relative humidity of the air")
+    units: Annotated[
+        Annotated[str, Choice(tuple(UNIT_SETS)), Tag("<text>")]
+        | Annotated[UnitsSection, Tag("<mapping>")],
+        by_shape(text="us or metric", mapping="a mapping of single units"),
+    ] = Field("us", description="Units of the card: the name of a set, or unit by unit")
+    paper: Annotated[str, Choice(("half-letter", "A5", "letter", "A4"))] = Field(
+        "half-letter", description="Paper; letter and A4 carry two pages each"
+    )
+
+    @model_validator(mode="after")
+    def _check(self) -> CardSection:
+        for key in _ORDERED:
+            require_increasing(getattr(self, key) or [], at=(key,), leaf="")
+        if self.altitude_kind == "density" and self.temperatures != [0.0]:
+            raise wrong(
+                "temperature columns on a card by density altitude",
+                "altitude_kind: pressure, or no temperatures",
+                at=("temperatures",),
+            )
+        for index, name in enumerate(self.mixtures or ()):
+            if name in (self.mixtures or ())[:index]:
+                raise wrong(f"{name!r} is listed twice", "each once", at=("mixtures", index))
+        return self
+
+    def choices(self, *, gross_mass: float, mixtures: tuple[str, ...]) -> CardChoices:
+        """Return the choices, with what is left out filled in.
+
+        Parameters
+        ----------
+        gross_mass : float
+            Greatest mass of the aircraft [kg]
+        mixtures : tuple of str
+            Names of all mixtures of the profile [-]
+
+        Returns
+        -------
+        CardChoices
+            What the card shows [-]
+        """
+        kind: Literal["density", "pressure"] = (
+            "density" if self.altitude_kind == "density" else "pressure"
+        )
+        units = UNIT_SETS[self.units] if isinstance(self.units, str) else self.units.unit_set()
+        return CardChoices(
+            rpm=tuple(self.rpm),
+            power_fraction=tuple(self.percent_powers),
+            altitude=tuple(self.altitudes),
+            altitude_kind=kind,
+            isa_deviation=tuple(self.temperatures),
+            mass=tuple(self.masses) if self.masses else (gross_mass,),
+            mixtures=tuple(self.mixtures) if self.mixtures else mixtures,
+            units=units,
+            paper=self.paper,
+            relative_humidity=self.relative_humidity,
+        )
