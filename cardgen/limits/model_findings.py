@@ -204,10 +204,13 @@ def _over_square(case: Case) -> Iterator[Judgement]:
         if not curves:
             return f"{said}; no chart of manifold pressure against rpm is stated to judge it by"
         verdict, _ = stricter([judge_manifold_pressure_curve(c, case.spans) for c in curves])
-        if verdict[index] == Verdict.INSIDE:
-            allowed = "; ".join(_charted(case, index))
-            return f"{said}, which the chart permits: {allowed}"
-        return f"{said}, which the chart does not permit; see manifold_pressure_curve"
+        match int(verdict[index]):
+            case Verdict.INSIDE:
+                return f"{said}, which the chart permits: {'; '.join(_charted(case, index))}"
+            case Verdict.OUTSIDE:
+                return f"{said}, which the chart does not permit; see manifold_pressure_curve"
+            case _:
+                return f"{said}, which cannot be compared with the chart here"
 
     yield modelled(
         case,
