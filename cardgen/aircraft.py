@@ -72,7 +72,8 @@ class Setting:
 
     Notes
     -----
-    Exactly one of `power` and `manifold_pressure` is given.
+    At least one of `power` and `manifold_pressure` is given; with both, manifold pressure counts
+    where power is NaN, so that one array can hold rows of either kind.
     """
 
     rpm: Floats
@@ -81,6 +82,6 @@ class Setting:
     manifold_pressure: Floats | None = None
 
     def __post_init__(self) -> None:
-        """Refuse a setting that asks for both or neither."""
-        if (self.power is None) == (self.manifold_pressure is None):
-            raise ValueError("a setting asks for power or for manifold pressure, one of the two")
+        """Refuse a setting that asks for nothing."""
+        if self.power is None and self.manifold_pressure is None:
+            raise ValueError("a setting asks for power or for manifold pressure")

@@ -160,10 +160,7 @@ def _problem(aircraft: Aircraft, condition: Condition, setting: Setting) -> _Pro
         temperature=condition.temperature,
         vapour_pressure=condition.vapour_pressure,
     )
-    if setting.power is not None:
-        asked = manifold_pressure(line, setting.power)
-    else:
-        asked = np.asarray(setting.manifold_pressure, dtype=np.float64)
+    asked = _asked_manifold_pressure(line, setting)
     air = density(
         condition.pressure, condition.temperature, vapour_pressure=condition.vapour_pressure
     )
@@ -185,6 +182,16 @@ def _problem(aircraft: Aircraft, condition: Condition, setting: Setting) -> _Pro
         thrust_scale=propeller.installation_factor * air * turns**2 * diameter**4,
         rotation=np.pi * turns * diameter / sound,
     )
+
+
+def _asked_manifold_pressure(line: PowerLine, setting: Setting) -> FloatArray:
+    """Manifold pressure of a setting, within reach or not [Pa]."""
+    if setting.power is None:
+        return np.asarray(setting.manifold_pressure, dtype=np.float64)
+    needed = manifold_pressure(line, setting.power)
+    if setting.manifold_pressure is None:
+        return needed
+    return np.where(np.isnan(setting.power), setting.manifold_pressure, needed)
 
 
 def _engine_at(problem: _Problem, airspeed: FloatArray) -> _Engine:

@@ -1,0 +1,35 @@
+"""Fit: evidence, priors, least squares, covariance, tolerances."""
+
+from cardgen.fit.estimate import Estimate, estimate
+from cardgen.fit.evidence import QUANTITIES, Evidence, standard_deviations
+from cardgen.fit.model import Subject, cruise_of_rows, mixture_of_rows, predict
+from cardgen.fit.parameters import (
+    PARTS,
+    Parameter,
+    Part,
+    applied,
+    parameters,
+    prior_covariance,
+    prior_mean,
+)
+from cardgen.fit.tolerance import tolerances
+
+__all__ = [
+    "PARTS",
+    "QUANTITIES",
+    "Estimate",
+    "Evidence",
+    "Parameter",
+    "Part",
+    "Subject",
+    "applied",
+    "cruise_of_rows",
+    "estimate",
+    "mixture_of_rows",
+    "parameters",
+    "predict",
+    "prior_covariance",
+    "prior_mean",
+    "standard_deviations",
+    "tolerances",
+]

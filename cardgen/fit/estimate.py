@@ -1,0 +1,293 @@
+"""Maximum a posteriori fit of an aircraft's parameters to its evidence.
+
+This is the only module that imports scipy, and it does so when it is called.
+
+References
+----------
+.. [1] A. Tarantola, Inverse Problem Theory, SIAM 2005, section 3.2: least squares with priors,
+   posterior covariance.
+.. [2] P. J. Huber, E. M. Ronchetti, Robust Statistics, Wiley 2009, chapter 7.
+.. [3] D. A. Belsley, E. Kuh, R. E. Welsch, Regression Diagnostics, Wiley 1980, section 2.1:
+   the residual without a row from the residual with it and its leverage.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from cardgen.errors import NoSolutionError
+from cardgen.fit.evidence import QUANTITIES, Evidence, standard_deviations
+from cardgen.fit.model import Subject, predict
+from cardgen.fit.parameters import parameters, prior_covariance, prior_mean
+
+FloatArray = npt.NDArray[np.float64]
+
+ROBUST_FROM: Final = 2.0
+"""Residual, in standard deviations, beyond which it pulls less than its square [-]."""
+
+SCATTER_WEIGHT: Final = 6.0
+"""How many rows of evidence the assumed scatter counts for, against the scatter seen [-]."""
+
+_STEP: Final = 1e-3  # of a prior deviation, for central differences
+
+
+@dataclass(frozen=True, slots=True)
+class Estimate:
+    """What a fit found.
+
+    Parameters
+    ----------
+    names : tuple of str
+        Names of the parameters [-]
+    values, prior : ndarray, shape (p,)
+        Parameters found, and the mean of their prior [-]
+    covariance : ndarray, shape (p, p)
+        Covariance of the parameters found [-]
+    prior_deviation : ndarray, shape (p,)
+        Standard deviations of the prior [-]
+    scatter : ndarray, shape (3,)
+        Standard deviation of what model and table disagree in besides parameters, SI, in the order
+        of `cardgen.fit.evidence.QUANTITIES`
+    residual : ndarray, shape (rows, 3)
+        Model less evidence, SI; NaN where nothing was read
+    left_out : ndarray, shape (rows, 3)
+        The same for a fit that has not seen the row, to first order
+    standardised : ndarray, shape (rows, 3)
+        `left_out` over the deviation expected of it [-]
+    """
+
+    names: tuple[str, ...]
+    values: FloatArray
+    prior: FloatArray
+    covariance: FloatArray
+    prior_deviation: FloatArray
+    scatter: FloatArray
+    residual: FloatArray
+    left_out: FloatArray
+    standardised: FloatArray
+
+    @property
+    def standard_error(self) -> FloatArray:
+        """Standard errors of the parameters."""
+        return np.asarray(np.sqrt(np.diag(self.covariance)))
+
+    def rms(self) -> FloatArray:
+        """Root mean square residual per quantity, NaN where nothing was read.
+
+        Returns
+        -------
+        ndarray, shape (3,)
+            SI
+        """
+        return _rms(self.residual)
+
+    def left_out_rms(self) -> FloatArray:
+        """Root mean square residual of rows that the fit has not seen.
+
+        Returns
+        -------
+        ndarray, shape (3,)
+            SI
+        """
+        return _rms(self.left_out)
+
+
+def _rms(residual: FloatArray) -> FloatArray:
+    """Root mean square of each column, NaN where it is empty."""
+    count = np.sum(~np.isnan(residual), axis=0)
+    with np.errstate(invalid="ignore"):
+        return np.asarray(np.sqrt(np.nansum(residual**2, axis=0) / np.where(count, count, np.nan)))
+
+
+def estimate(
+    subject: Subject,
+    evidence: Evidence,
+    *,
+    mean: FloatArray | None = None,
+    covariance: FloatArray | None = None,
+) -> Estimate:
+    """Fit the parameters of an aircraft to evidence.
+
+    Parameters
+    ----------
+    subject : Subject
+        The aircraft and mixtures, as the profile builds them [-]
+    evidence : Evidence
+        What its handbook and its flights say [-]
+    mean : ndarray, shape (p,), optional
+        Mean of the prior, where it is not that of the profile (an earlier fit) [-]
+    covariance : ndarray, shape (p, p), optional
+        Covariance of the prior, likewise [-]
+
+    Returns
+    -------
+    Estimate
+        Parameters, covariance and residuals [-]
+
+    Raises
+    ------
+    NoSolutionError
+        Where the model has no answer for a row of evidence.
+
+    Notes
+    -----
+    Minimises the squares of the residuals over their deviations plus the squared distance from the
+    prior; residuals beyond `ROBUST_FROM` deviations count by the pseudo-Huber loss.
+    """
+    from scipy.optimize import least_squares  # noqa: PLC0415 - slow to import, needed only here
+
+    listed = parameters(subject.mixtures)
+    start = prior_mean(subject.aircraft, subject.mixtures)
+    prior = start if mean is None else mean
+    spread = prior_covariance(subject.mixtures) if covariance is None else covariance
+    whiten = np.linalg.inv(np.linalg.cholesky(spread))
+    deviation = np.sqrt(np.diag(spread))
+    read = evidence.read()
+    known = ~np.isnan(read)
+    expected = standard_deviations(evidence)
+    lower = np.array([parameter.lower for parameter in listed])
+    upper = np.array([parameter.upper for parameter in listed])
+    step = np.minimum(_STEP * deviation, 0.25 * (upper - lower))
+    _refuse_unanswered(predict(subject, evidence, values=prior), known, evidence)
+
+    def residuals(values: FloatArray) -> FloatArray:
+        plain = ((predict(subject, evidence, values=values) - read) / expected)[known]
+        return np.concatenate([_robust(plain), whiten @ (values - prior)])
+
+    def jacobian(values: FloatArray) -> FloatArray:
+        plain = ((predict(subject, evidence, values=values) - read) / expected)[known]
+        slope = _slopes(subject, evidence, values=values, step=step) / expected[..., None]
+        return np.concatenate([_robust_slope(plain)[:, None] * slope[known], whiten])
+
+    found = least_squares(
+        residuals,
+        np.clip(prior, lower + 1e-9, upper - 1e-9),
+        jac=jacobian,
+        bounds=(lower, upper),
+        x_scale=deviation,
+        xtol=1e-10,
+        ftol=1e-10,
+    ).x
+    return _described(
+        subject, evidence, values=found, prior=prior, spread=spread, step=step, expected=expected
+    )
+
+
+def _refuse_unanswered(
+    predicted: FloatArray, known: npt.NDArray[np.bool_], evidence: Evidence
+) -> None:
+    """Raise where the model cannot say anything about what a row states."""
+    dumb = np.any(known & np.isnan(predicted), axis=-1)
+    if dumb.any():
+        first = evidence.place[int(np.argmax(dumb))]
+        raise NoSolutionError(
+            f"{first}: the model of this profile has no level flight here "
+            f"({int(dumb.sum())} such rows); check the row's rpm, power and altitude, and the "
+            "profile's engine, propeller and wing"
+        )
+
+
+def _robust(residual: FloatArray) -> FloatArray:
+    """Residual whose square is twice the pseudo-Huber loss."""
+    scaled = (residual / ROBUST_FROM) ** 2
+    return np.asarray(
+        np.sign(residual) * ROBUST_FROM * np.sqrt(2.0 * scaled / (np.sqrt(1.0 + scaled) + 1.0))
+    )
+
+
+def _robust_slope(residual: FloatArray) -> FloatArray:
+    """Derivative of `_robust`."""
+    scaled = (residual / ROBUST_FROM) ** 2
+    root = np.sqrt(1.0 + scaled)
+    return np.asarray(np.sqrt(0.5 * (root + 1.0)) / root)
+
+
+def _slopes(
+    subject: Subject, evidence: Evidence, *, values: FloatArray, step: FloatArray
+) -> FloatArray:
+    """Derivatives of what the model says by each parameter, shape (rows, 3, p)."""
+    shift = np.diag(step)
+    both = predict(subject, evidence, values=np.concatenate([values + shift, values - shift]))
+    count = len(values)
+    change = (both[:count] - both[count:]) / (2.0 * step[:, None, None])
+    return np.nan_to_num(np.moveaxis(change, 0, -1))
+
+
+def _described(
+    subject: Subject,
+    evidence: Evidence,
+    *,
+    values: FloatArray,
+    prior: FloatArray,
+    spread: FloatArray,
+    step: FloatArray,
+    expected: FloatArray,
+) -> Estimate:
+    """Covariance, scatter and leave-one-out residuals at the parameters found."""
+    residual = predict(subject, evidence, values=values) - evidence.read()
+    known = ~np.isnan(residual)
+    plain = np.where(known, residual / expected, 0.0)
+    weight = np.where(known, (1.0 + (plain / ROBUST_FROM) ** 2) ** -0.5, 0.0)
+    slope = _slopes(subject, evidence, values=values, step=step) / expected[..., None]
+    weighted = slope * np.sqrt(weight)[..., None]
+    information = np.einsum("nqi,nqj->ij", weighted, weighted)
+    inverse_spread = np.linalg.inv(spread)
+    covariance = np.linalg.inv(information + inverse_spread)
+    left_out = np.full_like(residual, np.nan)
+    standardised = np.full_like(residual, np.nan)
+    for row in range(len(evidence)):  # one small matrix a row; a row is left out whole
+        seen = known[row]
+        if not seen.any():
+            continue
+        at = weighted[row, seen]
+        leverage = at @ covariance @ at.T
+        without = np.linalg.solve(
+            np.eye(len(at)) - leverage, (plain[row] * weight[row] ** 0.5)[seen]
+        )
+        root = weight[row, seen] ** 0.5
+        left_out[row, seen] = without / root * expected[row, seen]
+        # Deviation of a row not seen: its own and that of the parameters found without it.
+        unseen = np.linalg.inv(np.linalg.inv(covariance) - at.T @ at)
+        own = np.einsum("qi,ij,qj->q", slope[row, seen], unseen, slope[row, seen])
+        standardised[row, seen] = without / root / np.sqrt(1.0 + own)
+    scatter = _scatter(residual, evidence, expected)
+    # Where the evidence scatters more than was assumed, the parameters are less sure too.
+    excess = _excess(plain, known)
+    return Estimate(
+        names=tuple(parameter.name for parameter in parameters(subject.mixtures)),
+        values=values,
+        prior=prior,
+        covariance=np.linalg.inv(information / excess + inverse_spread),
+        prior_deviation=np.asarray(np.sqrt(np.diag(spread))),
+        scatter=scatter,
+        residual=residual,
+        left_out=left_out,
+        standardised=standardised,
+    )
+
+
+def _excess(plain: FloatArray, known: npt.NDArray[np.bool_]) -> float:
+    """Variance seen over variance assumed, not below 1, steadied by what was assumed."""
+    bent = _robust(plain[known])
+    return max(1.0, float((SCATTER_WEIGHT + bent @ bent) / (SCATTER_WEIGHT + bent.size)))
+
+
+def _scatter(residual: FloatArray, evidence: Evidence, expected: FloatArray) -> FloatArray:
+    """Deviation, per quantity, of a row from the right model: assumed and seen together."""
+    known = ~np.isnan(residual)
+    count = known.sum(axis=0)
+    assumed = np.array(
+        [
+            np.mean(expected[known[:, column], column] ** 2) if count[column] else np.nan
+            for column in range(len(QUANTITIES))
+        ]
+    )
+    default = np.nanmax(standard_deviations(evidence) ** 2, axis=0)
+    assumed = np.where(np.isnan(assumed), default, assumed)
+    bent = np.where(known, _robust(np.where(known, residual / expected, 0.0)), 0.0) * expected
+    seen = np.sum(bent**2, axis=0)
+    return np.asarray(np.sqrt((SCATTER_WEIGHT * assumed + seen) / (SCATTER_WEIGHT + count)))

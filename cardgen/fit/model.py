@@ -1,0 +1,102 @@
+"""What the model says to rows of evidence, for one or many sets of parameters."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from cardgen.aircraft import Aircraft, Condition, Setting
+from cardgen.cruise import CruisePoint, solve_cruise
+from cardgen.engine import Mixture
+from cardgen.fit.evidence import Evidence
+from cardgen.fit.parameters import applied
+
+FloatArray = npt.NDArray[np.float64]
+
+
+@dataclass(frozen=True, slots=True)
+class Subject:
+    """The aircraft and mixtures that are fitted, as the profile builds them."""
+
+    aircraft: Aircraft
+    mixtures: tuple[Mixture, ...]
+
+
+def mixture_of_rows(mixtures: Sequence[Mixture], index: npt.NDArray[np.intp]) -> Mixture:
+    """One mixture whose numbers are arrays, a row's own in each place.
+
+    Parameters
+    ----------
+    mixtures : sequence of Mixture
+        The mixtures [-]
+    index : ndarray of int, shape (n,)
+        Which of them each row uses [-]
+
+    Returns
+    -------
+    Mixture
+        With arrays of shape (n,), or (k, n) where the fuel scales have shape (k, 1) [-]
+    """
+    ratios = np.array([mixture.fuel_air_ratio for mixture in mixtures], dtype=np.float64)
+    scales = np.concatenate(
+        [np.atleast_1d(np.asarray(mixture.fuel_scale, dtype=np.float64)) for mixture in mixtures],
+        axis=-1,
+    )
+    return Mixture("rows", ratios[index], fuel_scale=scales[..., index])
+
+
+def predict(subject: Subject, evidence: Evidence, *, values: FloatArray) -> FloatArray:
+    """Manifold pressure, fuel flow and true airspeed of rows of evidence.
+
+    Parameters
+    ----------
+    subject : Subject
+        What is fitted [-]
+    evidence : Evidence
+        The rows, n of them [-]
+    values : ndarray, shape (p,) or (k, p)
+        One or k sets of parameters [-]
+
+    Returns
+    -------
+    ndarray, shape (n, 3) or (k, n, 3)
+        In the order of `cardgen.fit.evidence.QUANTITIES`, SI; NaN where the model has no answer
+
+    Notes
+    -----
+    A row that states power is asked for that power, so that its manifold pressure is a prediction;
+    a row that states only manifold pressure is asked for that, and predicts the rest.
+    """
+    point = cruise_of_rows(subject, evidence, values=values)
+    return np.stack([point.manifold_pressure, point.fuel_flow, point.true_airspeed], axis=-1)
+
+
+def cruise_of_rows(subject: Subject, evidence: Evidence, *, values: FloatArray) -> CruisePoint:
+    """Solve the cruise of rows of evidence.
+
+    Parameters
+    ----------
+    subject : Subject
+        What is fitted [-]
+    evidence : Evidence
+        The rows, n of them [-]
+    values : ndarray, shape (p,) or (k, p)
+        One or k sets of parameters [-]
+
+    Returns
+    -------
+    CruisePoint
+        Arrays of shape (n,) or (k, n) [-]
+    """
+    aircraft, mixtures = applied(subject.aircraft, subject.mixtures, values=values)
+    condition = Condition(evidence.pressure, evidence.temperature, evidence.mass)
+    setting = Setting(
+        evidence.rpm,
+        mixture_of_rows(mixtures, evidence.mixture),
+        power=evidence.power,
+        manifold_pressure=evidence.manifold_pressure,
+    )
+    return solve_cruise(aircraft, condition, setting=setting)
