@@ -9,17 +9,18 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from cardgen.propeller.blade import REFERENCE_STATION, Blade, Body, Propeller
+from cardgen.propeller.loss import loss_factor
 from cardgen.propeller.section import clark_y, lift_drag
 from cardgen.roots import find_root
 
 FloatArray = NDArray[np.float64]
 
 #: Gauss-Legendre stations along the blade; see `_stations`.
-STATION_COUNT = 18
+STATION_COUNT = 16
 #: Inflow angles are solved to this [rad].
 _ANGLE_TOLERANCE = 1e-9
 #: Points solved at once: stations times points then stay in the processor's cache.
-_CHUNK = 1536
+_CHUNK = 1024
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,8 +60,9 @@ def _stations(blade: Blade) -> _Stations:
     nodes, weights = np.polynomial.legendre.leggauss(STATION_COUNT)
     s = 0.5 * (nodes + 1.0)
     hub = blade.radius_fraction[0]
-    x = 1.0 - (1.0 - hub) * (1.0 - s) ** 2
-    weight = 0.5 * weights * 2.0 * (1.0 - hub) * (1.0 - s)
+    quarter = 0.5 * np.pi
+    x = hub + (1.0 - hub) * np.sin(quarter * s)
+    weight = 0.5 * weights * (1.0 - hub) * quarter * np.cos(quarter * s)
     return _Stations(
         x=x[:, None],
         weight=weight,
@@ -165,15 +167,14 @@ def _solve(propeller: Propeller, j: FloatArray, beta: FloatArray, mach: FloatArr
     section = clark_y(at.thickness, local_mach, chord_to_radius=2.0 * at.chord / x)
     angle = beta + at.twist
     solidity = blades * at.chord / (np.pi * x)
-    tip = -0.5 * blades * (1.0 - x) / x
-    hub = -0.5 * blades * (x - at.hub) / at.hub
+    loss_at = loss_factor(propeller.blade_count, at.hub, stations=tuple(x[:, 0].tolist()))
 
     def residual(phi: FloatArray) -> FloatArray:
         sine, cosine = np.sin(phi), np.cos(phi)
         lift, drag = lift_drag(section, angle - phi)
         normal = lift * cosine - drag * sine
         tangential = lift * sine + drag * cosine
-        loss = _loss(sine, tip, hub)
+        loss = loss_at(sine)
         return 4.0 * loss * sine * (sine - ratio * cosine) - solidity * (
             normal + ratio * tangential
         )
@@ -186,7 +187,7 @@ def _solve(propeller: Propeller, j: FloatArray, beta: FloatArray, mach: FloatArr
     lift, drag = lift_drag(section, angle - phi)
     normal = lift * cosine - drag * sine
     tangential = lift * sine + drag * cosine
-    loss = _loss(sine, tip, hub)
+    loss = loss_at(sine)
     # W / (n D), from the tangential component: never singular.
     speed = np.pi * x / (cosine + solidity * tangential / (4.0 * loss * sine))
     load = at.weight[:, None] * speed * speed * at.chord
@@ -195,14 +196,6 @@ def _solve(propeller: Propeller, j: FloatArray, beta: FloatArray, mach: FloatArr
     thrust = _less_slipstream_drag(propeller.body, thrust)
     incidence = beta - _interpolate(x[:, 0], phi)
     return np.stack((power, thrust, incidence))
-
-
-def _loss(sine: FloatArray, tip: FloatArray, hub: FloatArray) -> FloatArray:
-    """Prandtl's loss factor of tip and hub together."""
-    at_tip = np.arccos(np.exp(tip / sine))
-    at_hub = np.arccos(np.exp(hub / sine))
-    loss: FloatArray = (4.0 / np.pi**2) * at_tip * at_hub
-    return loss
 
 
 def _less_slipstream_drag(body: Body | None, thrust: FloatArray) -> FloatArray:

@@ -10,13 +10,11 @@ from numpy.typing import ArrayLike, NDArray
 
 from cardgen.propeller.blade import REFERENCE_STATION, Propeller
 from cardgen.propeller.table import (
-    GREATEST_INCIDENCE,
     GREATEST_TIP_MACH,
-    LEAST_ADVANCE_RATIO,
-    LEAST_INCIDENCE,
     LEAST_TIP_MACH,
     coefficient_table,
     effective_helix_angle,
+    table_advance_ratios,
 )
 from cardgen.roots import find_root
 
@@ -112,11 +110,11 @@ def ungoverned_rpm(
         surplus_power: FloatArray = absorbed * rho * turns**3 * diameter**5 - power(rpm)
         return surplus_power
 
-    helix = REFERENCE_STATION * np.pi
-    greatest_j = np.minimum(table.greatest_advance_ratio, helix * np.tan(angle - LEAST_INCIDENCE))
-    least_j = np.maximum(LEAST_ADVANCE_RATIO, helix * np.tan(angle - GREATEST_INCIDENCE))
+    least_j, greatest_j = table_advance_ratios(table, angle)
     per_mach = 60.0 * sound / (np.pi * diameter)
-    lower = np.maximum(60.0 * speed / (greatest_j * diameter), LEAST_TIP_MACH * per_mach)
+    with np.errstate(divide="ignore"):
+        slowest = 60.0 * speed / (greatest_j * diameter)
+    lower = np.maximum(slowest, LEAST_TIP_MACH * per_mach)
     upper = np.minimum(60.0 * speed / (least_j * diameter), GREATEST_TIP_MACH * per_mach)
     empty = ~(lower < upper)
     lower, upper = lower * (1.0 + _INSIDE), upper * (1.0 - _INSIDE)

@@ -9,19 +9,23 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from cardgen.curves import SplineGrid
+from cardgen.errors import DomainError
 from cardgen.propeller.blade import REFERENCE_STATION, Propeller
 from cardgen.propeller.element import Coefficients, coefficients
 from cardgen.roots import find_root
 
 FloatArray = NDArray[np.float64]
 
-#: Domain of every table. The second axis is the blade's incidence: blade angle less the angle of
-#: the undisturbed helix at 0.75 R, in which all propellers look alike.
+#: Domain of every table. The second axis is the blade angle less `_datum_angle`, in which all
+#: propellers look alike at all advance ratios.
 LEAST_ADVANCE_RATIO = 0.2
-LEAST_INCIDENCE, GREATEST_INCIDENCE = np.radians(-4.0), np.radians(18.0)
 LEAST_TIP_MACH, GREATEST_TIP_MACH = 0.40, 0.95
-_NODES = (16, 18, 6)
-_GOVERNED_NODES = (20, 24, 6)
+_LEAST_ANGLE, _GREATEST_ANGLE = float(np.radians(-4.0)), float(np.radians(18.0))
+#: Keeps the datum away from blades so fine, at low advance ratios, that they blow backwards.
+_LIFTED_BY = 0.2
+#: Nodes over J, blade angle and tip Mach number, and over J, relative power and tip Mach number.
+_NODES = (14, 18, 10)
+_GOVERNED_NODES = (18, 28, 10)
 #: Incidences at which the rise of C_P is looked over for its first peak, the stall.
 _SCAN = 45
 #: Advance ratio goes up to where the blade at its coarse stop, and this much more, windmills.
@@ -38,17 +42,17 @@ class CoefficientTable:
     Parameters
     ----------
     forward : SplineGrid
-        C_P, C_T and section angle of attack over (J, incidence, Mach).
+        C_P, C_T and section angle of attack over (J, blade angle above datum, Mach).
     inverse : SplineGrid
-        Incidence and C_T over (J, relative power, Mach).
+        Blade angle above datum and C_T over (J, relative power, Mach).
     least_power, greatest_power : tuple of float
-        Polynomials of J, constant term first, between which C_P can be inverted [-]
+        Polynomials of J, highest power first, between which C_P can be inverted [-]
     """
 
     forward: SplineGrid
     inverse: SplineGrid
-    least_power: tuple[float, float, float]
-    greatest_power: tuple[float, float, float]
+    least_power: tuple[float, ...]
+    greatest_power: tuple[float, ...]
 
     @property
     def greatest_advance_ratio(self) -> float:
@@ -75,8 +79,8 @@ class CoefficientTable:
             NaN outside the table.
         """
         j = np.asarray(advance_ratio, dtype=np.float64)
-        incidence = np.asarray(blade_angle, dtype=np.float64) - effective_helix_angle(j)
-        power, thrust, angle = self.forward.values((j, incidence, tip_mach), (0, 1, 2))
+        above = np.asarray(blade_angle, dtype=np.float64) - _datum_angle(j)
+        power, thrust, angle = self.forward.values((j, above, tip_mach), (0, 1, 2))
         return Coefficients(power, thrust, angle)
 
     def governed(
@@ -102,8 +106,8 @@ class CoefficientTable:
         """
         j = np.asarray(advance_ratio, dtype=np.float64)
         share = self._relative_power(j, np.asarray(power_coefficient, dtype=np.float64))
-        incidence, thrust = self.inverse.values((j, share, tip_mach), (0, 1))
-        return incidence + effective_helix_angle(j), thrust
+        above, thrust = self.inverse.values((j, share, tip_mach), (0, 1))
+        return above + _datum_angle(j), thrust
 
     def governed_thrust(
         self, advance_ratio: ArrayLike, *, power_coefficient: ArrayLike, tip_mach: ArrayLike
@@ -152,6 +156,35 @@ def effective_helix_angle(advance_ratio: ArrayLike) -> FloatArray:
     return np.arctan(np.asarray(advance_ratio, dtype=np.float64) / (REFERENCE_STATION * np.pi))
 
 
+def table_advance_ratios(
+    table: CoefficientTable, blade_angle: ArrayLike
+) -> tuple[FloatArray, FloatArray]:
+    """Least and greatest advance ratio at which a table knows a blade angle.
+
+    Parameters
+    ----------
+    table : CoefficientTable
+        The table.
+    blade_angle : array_like
+        Blade angle at 0.75 R [rad]
+
+    Returns
+    -------
+    least, greatest : ndarray
+        Advance ratios; least above greatest where there are none [-]
+    """
+    angle = np.asarray(blade_angle, dtype=np.float64)
+    helix = REFERENCE_STATION * np.pi
+
+    def at(above: float) -> FloatArray:
+        lifted = helix * np.tan(angle - above)
+        return np.sqrt(np.maximum(np.sign(lifted) * lifted**2 - _LIFTED_BY**2, 0.0))
+
+    least = np.maximum(at(_GREATEST_ANGLE), LEAST_ADVANCE_RATIO)
+    greatest = np.minimum(at(_LEAST_ANGLE), table.greatest_advance_ratio)
+    return least, greatest
+
+
 def coefficient_table(propeller: Propeller) -> CoefficientTable:
     """Table of a propeller, computed once per shape and kept.
 
@@ -164,7 +197,12 @@ def coefficient_table(propeller: Propeller) -> CoefficientTable:
     -------
     CoefficientTable
         Covers advance ratios from 0.2 to where the blade windmills at its coarse stop, tip Mach
-        numbers from 0.40 to 0.95, and incidences at 0.75 R from -4 to 18 degrees.
+        numbers from 0.40 to 0.95, and blade angles from about zero thrust to beyond the stall.
+
+    Raises
+    ------
+    DomainError
+        The blade form is so unlike a propeller's that it cannot be solved over that range.
     """
     reach = REFERENCE_STATION * np.pi * np.tan(propeller.coarse_stop + _COARSE_MARGIN)
     steps = int(np.ceil((min(reach, 4.0) - LEAST_ADVANCE_RATIO) / _ADVANCE_RATIO_STEP))
@@ -184,19 +222,18 @@ def coefficient_table(propeller: Propeller) -> CoefficientTable:
 def _build(shape: Propeller, steps: int) -> CoefficientTable:
     """Solve the nodes, then invert the splines through them."""
     upper_j = LEAST_ADVANCE_RATIO + steps * _ADVANCE_RATIO_STEP
-    lower = (LEAST_ADVANCE_RATIO, float(LEAST_INCIDENCE), LEAST_TIP_MACH)
-    upper = (upper_j, float(GREATEST_INCIDENCE), GREATEST_TIP_MACH)
-    j, incidence, mach = (
-        np.linspace(a, b, n) for a, b, n in zip(lower, upper, _NODES, strict=True)
-    )
+    lower = (LEAST_ADVANCE_RATIO, _LEAST_ANGLE, LEAST_TIP_MACH)
+    upper = (upper_j, _GREATEST_ANGLE, GREATEST_TIP_MACH)
+    j, above, mach = (np.linspace(a, b, n) for a, b, n in zip(lower, upper, _NODES, strict=True))
     jg = j[:, None, None]
     solved = coefficients(
         shape,
         jg,
-        blade_angle=effective_helix_angle(jg) + incidence[None, :, None],
+        blade_angle=_datum_angle(jg) + above[None, :, None],
         tip_mach=mach[None, None, :],
     )
     nodes = np.stack((solved.power_coefficient, solved.thrust_coefficient, solved.angle_of_attack))
+    _check_solved(nodes)
     forward = SplineGrid.through(nodes, lower=lower, upper=upper)
 
     jn, sn, mn = (
@@ -234,6 +271,7 @@ def _build(shape: Propeller, steps: int) -> CoefficientTable:
         arguments=(jn, mn, wanted),
         tolerance=1e-10,
     )
+    _check_solved(angle)
     (thrust,) = forward.values((jn, angle, mn), (1,))
     inverse = SplineGrid.through(
         np.stack((angle, thrust)), lower=(lower[0], 0.0, lower[2]), upper=(upper[0], 1.0, upper[2])
@@ -241,19 +279,38 @@ def _build(shape: Propeller, steps: int) -> CoefficientTable:
     return CoefficientTable(forward, inverse, least, greatest)
 
 
-def _polynomial(terms: tuple[float, float, float], j: FloatArray) -> FloatArray:
-    """Value of a parabola of J."""
-    c0, c1, c2 = terms
-    return c0 + j * (c1 + j * c2)
+def _datum_angle(j: FloatArray) -> FloatArray:
+    """Blade angle from which the tables count: nearly that of the undisturbed helix."""
+    lifted = np.sqrt(j * j + _LIFTED_BY**2)
+    datum: FloatArray = np.arctan(lifted / (REFERENCE_STATION * np.pi))
+    return datum
 
 
-def _envelope(j: FloatArray, values: FloatArray, *, above: bool) -> tuple[float, float, float]:
-    """Parabola of J through the trend of values, moved so that none lies beyond it."""
-    c2, c1, c0 = np.polyfit(j, values, 2)
-    gap = values - (c0 + j * (c1 + j * c2))
-    shift = gap.max() if above else gap.min()
+def _check_solved(nodes: FloatArray) -> None:
+    """Refuse to draw splines through a node that has no solution: they would all be NaN."""
+    missing = int(np.isnan(nodes).sum())
+    if missing:
+        raise DomainError(
+            f"the propeller cannot be solved at {missing} of {nodes.size} nodes of its table; "
+            "expected a blade form like a propeller's, check twist, thickness and stops"
+        )
+
+
+def _polynomial(terms: tuple[float, ...], j: FloatArray) -> FloatArray:
+    """Value of a polynomial of J, highest power first."""
+    value = terms[0] * j + terms[1]
+    for term in terms[2:]:
+        value = value * j + term
+    return value
+
+
+def _envelope(j: FloatArray, values: FloatArray, *, above: bool) -> tuple[float, ...]:
+    """Quartic of J along values, moved so that none lies beyond it."""
+    terms = np.polyfit(j, values, 4)
+    gap = values - np.polyval(terms, j)
     inward = 1e-6 if above else -1e-6  # so that rounding cannot put a node beyond its bracket
-    return float(c0 + shift + inward), float(c1), float(c2)
+    terms[-1] += inward + (gap.max() if above else gap.min())
+    return tuple(float(term) for term in terms)
 
 
 def _first_peak(power: FloatArray) -> NDArray[np.intp]:
