@@ -73,10 +73,13 @@ class AirframeSection(Section):
         "retractable gear until a fit finds better",
     )
     oswald_factor: Annotated[float, Number(0.4, 1.0)] = Field(
-        0.75, description="Oswald's span efficiency factor, until a fit finds better"
+        0.75,
+        description="Span efficiency factor until a fit finds better; 0.75 where left out",
     )
     greatest_lift_coefficient: Annotated[float, Number(0.8, 2.2)] = Field(
-        1.3, description="Lift coefficient, flaps up, beyond which level flight is not shown"
+        1.3,
+        description="Lift coefficient, flaps up, beyond which level flight is not shown; "
+        "1.3 where left out",
     )
 
     @model_validator(mode="after")

@@ -80,14 +80,15 @@ class CardSection(Section):
         min_length=1, max_length=12, description="Altitude rows, increasing"
     )
     altitude_kind: Annotated[str, Choice(("density", "pressure"))] = Field(
-        "density", description="What the altitude rows are: density or pressure altitude"
+        "density",
+        description="What the altitude rows are: density (where left out) or pressure altitude",
     )
     temperatures: list[IsaDeviation] = Field(
         [0.0],
         min_length=1,
         max_length=5,
         description="Deviations from the standard temperature, increasing; "
-        "columns of a pressure-altitude card",
+        "columns of a pressure-altitude card; standard alone where left out",
     )
     masses: list[Mass] | None = Field(
         None,
@@ -105,16 +106,23 @@ class CardSection(Section):
         [0.0],
         min_length=1,
         max_length=7,
-        description="Winds along the track for distances, headwind positive, increasing",
+        description="Winds along the track for distances, headwind positive, increasing; "
+        "still air where left out",
     )
-    relative_humidity: Fraction = Field(0.0, description="Relative humidity of the air")
+    relative_humidity: Fraction = Field(
+        0.0, description="Relative humidity of the air; dry where left out"
+    )
     units: Annotated[
         Annotated[str, Choice(tuple(UNIT_SETS)), Tag("<text>")]
         | Annotated[UnitsSection, Tag("<mapping>")],
         by_shape(text="us or metric", mapping="a mapping of single units"),
-    ] = Field("us", description="Units of the card: the name of a set, or unit by unit")
+    ] = Field(
+        "us",
+        description="Units of the card: the name of a set (us where left out), or unit by unit",
+    )
     paper: Annotated[str, Choice(("half-letter", "A5", "letter", "A4"))] = Field(
-        "half-letter", description="Paper; letter and A4 carry two pages each"
+        "half-letter",
+        description="Paper; letter and A4 carry two pages each; half-letter where left out",
     )
 
     @model_validator(mode="after")

@@ -32,7 +32,7 @@ class EngineFile(Section):
         "natural", description="How the engine gets its air; only `natural` is modelled"
     )
     gear_ratio: Annotated[float, Number(0.3, 1.0)] = Field(
-        1.0, description="Propeller rpm over engine rpm; 1 for direct drive"
+        1.0, description="Propeller rpm over engine rpm; 1, direct drive, where left out"
     )
     fuel_density: Annotated[float, Quantity("density", "0.65 kg/l", "0.85 kg/l")] = Field(
         DEFAULT_FUEL_DENSITY, description="Density of the fuel; 6.0 lb/gal where left out"

@@ -146,7 +146,7 @@ class InstrumentsSection(Section):
         description="Error of the manifold-pressure gauge; unmeasured, a default band guards",
     )
     fuel_flow_factor: Annotated[float, Number(0.8, 1.25)] = Field(
-        1.0, description="True fuel flow over indicated fuel flow"
+        1.0, description="True fuel flow over indicated fuel flow; 1 where left out"
     )
     temperature_recovery: Annotated[float, Number(0.0, 1.0)] | None = Field(
         None,

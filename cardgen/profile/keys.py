@@ -25,10 +25,9 @@ FILES: dict[Kind, type[Section]] = {
 
 @dataclass(frozen=True, slots=True)
 class Key:
-    """One key of a file, for the table of keys in the README.
+    """One key of a file: a row of the table of keys in the README.
 
-    `path` has `[]` after a key that holds a list; `value` says what may be written; `default` is
-    None where the key is required.
+    `path` has `[]` after a key that holds a list; `value` says what may be written.
     """
 
     path: str
@@ -92,13 +91,31 @@ def _value_in(annotation: Any, metadata: Sequence[Any]) -> str:
     return "; or ".join(words + [part for part in dict.fromkeys(parts) if part])
 
 
+_Definition = tuple[type[Any], str]
+
+
+def _defined_in(section: type[Section], name: str) -> _Definition:
+    """Return the section that defines a key, which may be a base of this one, and the key."""
+    bases = (base for base in reversed(section.__mro__) if issubclass(base, Section))
+    return next(base for base in bases if name in base.model_fields), name
+
+
+def _shapes_in(annotation: Any, *, in_list: bool = False) -> Iterator[tuple[bool, Any]]:
+    """Yield each section that a key may hold, and whether it is an entry of a list."""
+    if isinstance(annotation, type) and issubclass(annotation, Section):
+        yield in_list, annotation
+    in_list = in_list or get_origin(annotation) is list
+    for argument in get_args(annotation):
+        yield from _shapes_in(argument, in_list=in_list)
+
+
 def _holds_list(annotation: Any) -> bool:
     """Return whether a key may hold a list."""
     return get_origin(annotation) is list or any(map(_holds_list, get_args(annotation)))
 
 
 def list_keys(kind: Kind) -> tuple[Key, ...]:
-    """Return every key of one kind of file, in the order of the file.
+    """Return the keys of one kind of file, in the order of the file.
 
     Parameters
     ----------
@@ -108,24 +125,28 @@ def list_keys(kind: Kind) -> tuple[Key, ...]:
     Returns
     -------
     tuple of Key
-        The keys, those within a section after the section's own [-]
+        The keys, those within a section after the section's own; sections and keys that stand in
+        several places are listed at the first of them [-]
     """
-    return tuple(_keys_of(FILES[kind], ""))
+    return tuple(_keys_of(FILES[kind], "", seen=set()))
 
 
-def _keys_of(section: type[Section], prefix: str) -> Iterator[Key]:
-    """Yield the keys of a section and of those within it."""
+def _keys_of(section: type[Section], prefix: str, *, seen: set[_Definition]) -> Iterator[Key]:
+    """Yield the keys of a section and of those within it, each definition once."""
     for name, info in section.model_fields.items():
         path = f"{prefix}{name}" + ("[]" if _holds_list(info.annotation) else "")
+        if (definition := _defined_in(section, name)) in seen:
+            continue
+        seen.add(definition)
         yield Key(path, _words(info), info.is_required(), info.description or "")
-        for inner in sections_in(info.annotation):
-            yield from _keys_of(inner, f"{path}.")
+        for in_list, inner in _shapes_in(info.annotation):
+            yield from _keys_of(inner, f"{prefix}{name}" + ("[]." if in_list else "."), seen=seen)
 
 
 def _words(info: FieldInfo) -> str:
     """Return what may be written for a key."""
     words = _value_in(info.annotation, info.metadata)
-    shape = "list" if _holds_list(info.annotation) else "mapping"
-    if any(True for _ in sections_in(info.annotation)):
-        return "; or ".join(part for part in (shape, words) if part)
-    return f"list of: {words}" if shape == "list" else words
+    shapes = ["list" if in_list else "mapping" for in_list, _ in _shapes_in(info.annotation)]
+    if shapes:
+        return "; or ".join(dict.fromkeys([*shapes, *filter(None, [words])]))
+    return f"list, each {words}" if _holds_list(info.annotation) else words

@@ -108,6 +108,10 @@ class _UnreadableError(Exception):
         super().__init__(found)
         self.place, self.found, self.expected, self.key = place, found, expected, key
 
+    def problem(self, shown: str) -> Problem:
+        """Return the problem, of a file of that name."""
+        return Problem(shown, *self.place, self.key, self.found, self.expected)
+
 
 _WHOLE_FILE = Place(0, 0)
 
@@ -127,12 +131,34 @@ def read_document(path: Path, *, shown: str) -> Document:
     Document
         Tree and problems; a file with problems may still have a tree [-]
     """
+    try:
+        text = _read_text(path)
+    except _UnreadableError as error:
+        return Document(None, (error.problem(shown),))
+    return read_tree(text, shown=shown)
+
+
+def read_tree(text: str, *, shown: str) -> Document:
+    """Read the text of one YAML file into a tree.
+
+    Parameters
+    ----------
+    text : str
+        The text [-]
+    shown : str
+        How problems name the file [-]
+
+    Returns
+    -------
+    Document
+        Tree and problems; a text with problems may still have a tree [-]
+    """
     builder = _Builder(shown)
     root = None
     try:
-        root = builder.build(_read_text(path))
+        root = builder.build(text)
     except _UnreadableError as error:
-        builder.report(error.place, error.key, error.found, error.expected)
+        builder.problems.append(error.problem(shown))
     return Document(root, tuple(builder.problems))
 
 

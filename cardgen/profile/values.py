@@ -134,7 +134,12 @@ class Quantity(Value):
 
     def json_schema(self) -> JsonSchemaValue:
         """Return the JSON Schema."""
-        return {"type": "string", "pattern": "^\\s*[-+−]?[0-9.]", "description": self.words}
+        _, _, examples = EXAMPLES[self.dimension].partition(" such as ")
+        return {
+            "type": "string",
+            "pattern": r"^\s*[-+−]?[0-9.]+\s*[^0-9.\s]",
+            "examples": examples.split(" or "),
+        }
 
 
 @dataclass(frozen=True)
