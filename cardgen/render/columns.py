@@ -152,7 +152,7 @@ def _columns_of(
     units = card.choices.units
     cells = _cells(edition, index, columns, across)
     values = [cell for cell in cells if len(cell) >= 3]
-    marks = {cell[1] for cell in values if len(cell) == 4}
+    marks = {cell[3] for cell in values if len(cell) == 4}
 
     def widest(texts: Iterable[str], face: Face, size: float) -> float:
         return max((width(text, face, size) for text in set(texts)), default=0.0)
@@ -162,11 +162,11 @@ def _columns_of(
         width(sign(units.pressure), "regular", NOTE),
     )
     flow = max(
-        widest((cell[-2] for cell in values), "regular", style.figure),
+        widest((cell[1] for cell in values), "regular", style.figure),
         width(sign(units.fuel_flow), "regular", NOTE),
     )
     speed = max(
-        widest((cell[-1] for cell in values), "regular", style.figure),
+        widest((cell[2] for cell in values), "regular", style.figure),
         width(sign(units.speed), "regular", NOTE),
     )
     mark = widest(marks, "bold", NOTE) + 2.0 * FRAME_PAD if marks else 0.0
@@ -187,7 +187,7 @@ def _columns_of(
     if style.stacked:
         bare, marked = max(pressure, pair), max(pressure + GAP + mark, pair)
     else:
-        bare, marked = pressure + GAP + pair, pressure + GAP + mark + GAP + pair
+        bare, marked = pressure + GAP + pair, pressure + GAP + pair + GAP + mark
     inline = bool(marks) and marked + 2.0 * PAD <= share
     rpm = (number(table.rpm[column[1]]) for column in columns)
     content = max(

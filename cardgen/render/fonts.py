@@ -6,6 +6,7 @@ library. Advance widths only: a card is set without kerning.
 
 from __future__ import annotations
 
+import re
 import struct
 from dataclasses import dataclass
 from functools import cache
@@ -23,6 +24,8 @@ FACES: Final[dict[Face, Path]] = {
 # both faces 2048 units to the em.
 CAP_HEIGHT: Final = 1456 / 2048
 DESCENT: Final = 430 / 2048
+
+BREAKS: Final = re.compile(r"[ \t\n\r]+")  # a no-break space keeps a number with its unit
 
 SUBSTITUTES: Final[dict[str, str]] = {
     "\t": " ",
@@ -188,7 +191,7 @@ def wrap(text: str, face: Face, *, size: float, measure: float) -> tuple[str, ..
     """
     lines: list[str] = []
     line = ""
-    for word in printable(text).split(" "):
+    for word in (printable(part) for part in BREAKS.split(text.strip())):
         longer = f"{line} {word}" if line else word
         if width(longer, face, size) <= measure:
             line = longer

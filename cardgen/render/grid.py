@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from itertools import groupby
 from typing import Final
 
 from cardgen.render.boxes import Box, Frame, Hatch, Rule, Run, Tint
@@ -20,6 +21,7 @@ from cardgen.render.wording import (
 )
 from cardgen.tables.card import CellState
 
+ROW_RULE: Final = 0.3  # between the rows of a band [pt]
 BAND: Final = 0.92  # grey of every other band; gone on a poor copy, where the rules remain
 
 # ---------------------------------------------------------------------------------------- heights
@@ -70,7 +72,7 @@ def row_height(grid: Grid, row: tuple[int, int]) -> float:
         grid.table.state[cell_index(row, column)] == CellState.FULL_THROTTLE
         for column in grid.part.columns
     ):
-        height += LEADING * NOTE + 2.0
+        height += LEADING * grid.style.figure
     return height
 
 
@@ -101,12 +103,11 @@ def place_grid(grid: Grid, *, x: float, top: float, continued: str) -> tuple[Box
         Title, column heads, then rows from top to bottom [-]
     """
     boxes = _title(grid, x, top, continued)
-    y = top - title_height(grid, continued)
+    y = start = top - title_height(grid, continued)
     boxes += _heads(grid, x, y)
     y -= head_height(grid)
     bands = _bands(grid)
     right = x + _total_width(grid)
-    start = y
     named: set[int] = set()
     for band, rows in enumerate(bands):
         height = sum(row_height(grid, row) for row in rows)
@@ -116,20 +117,18 @@ def place_grid(grid: Grid, *, x: float, top: float, continued: str) -> tuple[Box
             boxes += _row(grid, row, x, y, named=row[0] not in named)
             named.add(row[0])
             y -= row_height(grid, row)
-        last = band == len(bands) - 1
-        boxes.append(Rule(x, y, right, y, thickness=1.2 if last else 0.6))
-    boxes += [Rule(cut, start, cut, y, thickness=0.4) for cut in _column_cuts(grid, x)]
+            boxes.append(Rule(x, y, right, y, thickness=0.9 if row is rows[-1] else ROW_RULE))
+    boxes.append(Rule(x, y, right, y, thickness=1.4))
+    boxes += [Rule(cut, start, cut, y, thickness=weight) for cut, weight in _cuts(grid, x)]
     return tuple(boxes)
 
 
 def _bands(grid: Grid) -> list[tuple[tuple[int, int], ...]]:
     """Return the rows in twos or threes: the temperatures of one altitude, or neighbours."""
     rows = grid.part.rows
-    temperatures = len({t for _, t in rows})
-    if temperatures > 1:
-        size = temperatures
-    else:
-        size = 3 if len(rows) % 3 == 0 and not grid.style.stacked else 2
+    if len({temperature for _, temperature in rows}) > 1:
+        return [tuple(band) for _, band in groupby(rows, key=lambda row: row[0])]
+    size = 3 if len(rows) % 3 == 0 and not grid.style.stacked else 2
     return [rows[k : k + size] for k in range(0, len(rows), size)]
 
 
@@ -156,8 +155,9 @@ def _columns(grid: Grid, x: float) -> list[tuple[tuple[int, int], float, float |
     return placed
 
 
-def _column_cuts(grid: Grid, x: float) -> list[float]:
-    return [at if before is None else before for _, at, before in _columns(grid, x)]
+def _cuts(grid: Grid, x: float) -> list[tuple[float, float]]:
+    """Return where uprights stand and how thick: heavier where another temperature begins."""
+    return [(at, 0.5) if before is None else (before, 1.0) for _, at, before in _columns(grid, x)]
 
 
 def _title(grid: Grid, x: float, top: float, continued: str) -> list[Box]:
@@ -236,8 +236,6 @@ def _ends(grid: Grid, at: float) -> tuple[float, float]:
     start = _content_at(grid, at)
     if not grid.style.stacked:
         start += grid.columns.pressure_width + GAP
-        if grid.columns.mark_inline:
-            start += grid.columns.mark_width + GAP
     return (
         start + grid.columns.flow_width,
         start + grid.columns.flow_width + GAP + grid.columns.speed_width,
@@ -261,9 +259,7 @@ def _row(grid: Grid, row: tuple[int, int], x: float, top: float, *, named: bool)
             value = float(grid.table.outside_air_temperature[row[0], column[0]])
             right = before + grid.columns.temperature_width - PAD
             boxes.append(_right_run(number(value), right, y, "regular", style.figure))
-        boxes += _cell(
-            grid, cell_index(row, column), at=at, top=top, y=y, height=row_height(grid, row)
-        )
+        boxes += _cell(grid, cell_index(row, column), at=at, top=top, y=y, height=height)
     return boxes
 
 
@@ -271,34 +267,36 @@ def _cell(
     grid: Grid, index: tuple[int, int, int], *, at: float, top: float, y: float, height: float
 ) -> list[Box]:
     """Return one cell: its numbers, or a mark with a hatch behind it where it is forbidden."""
-    style = grid.style
+    style, columns = grid.style, grid.columns
     texts = cell_texts(grid.card, grid.table, index)
     if len(texts) == 1:
         return _mark(
             grid, texts[0], at, top, height, hatched=grid.table.state[index] == CellState.FORBIDDEN
         )
     start = _content_at(grid, at)
-    pressure = _right_run(texts[0], start + grid.columns.pressure_width, y, "bold", style.setting)
+    pressure = _right_run(texts[0], start + columns.pressure_width, y, "bold", style.setting)
     boxes: list[Box] = [pressure]
     below = y - style.lead if style.stacked else y
     flow_end, speed_end = _ends(grid, at)
+    boxes.append(_right_run(texts[1], flow_end, below, "regular", style.figure))
+    boxes.append(_right_run(texts[2], speed_end, below, "regular", style.figure))
     if len(texts) == 4:
-        if grid.columns.mark_inline:
-            mark_x, mark_y = start + grid.columns.pressure_width + GAP, y
+        if not columns.mark_inline:
+            mark_x, mark_y = start, below - LEADING * style.figure
+        elif style.stacked:
+            mark_x, mark_y = start + columns.pressure_width + GAP, y
         else:
-            mark_x, mark_y = start, below - LEADING * style.setting
-        boxes.append(Run(mark_x + FRAME_PAD, mark_y, texts[1], "bold", NOTE))
+            mark_x, mark_y = speed_end + GAP, y
+        boxes.append(Run(mark_x + FRAME_PAD, mark_y, texts[3], "bold", NOTE))
         boxes.append(
             Frame(
                 mark_x,
                 mark_y - FRAME_PAD,
-                width(texts[1], "bold", NOTE) + 2.0 * FRAME_PAD,
+                width(texts[3], "bold", NOTE) + 2.0 * FRAME_PAD,
                 CAP_HEIGHT * NOTE + 2.0 * FRAME_PAD,
                 0.8,
             )
         )
-    boxes.append(_right_run(texts[-2], flow_end, below, "regular", style.figure))
-    boxes.append(_right_run(texts[-1], speed_end, below, "regular", style.figure))
     return boxes
 
 
@@ -306,7 +304,8 @@ def _mark(
     grid: Grid, text: str, at: float, top: float, height: float, *, hatched: bool
 ) -> list[Box]:
     size = grid.style.setting
-    middle = at + 0.5 * grid.columns.column_width
+    columns = grid.columns
+    middle = at + 0.5 * columns.column_width
     y = top - 0.5 * height - 0.5 * CAP_HEIGHT * size
     run_width = width(text, "bold", size)
     boxes: list[Box] = []
@@ -315,7 +314,7 @@ def _mark(
             Hatch(
                 at + 1.5,
                 top - height + 1.5,
-                grid.columns.column_width - 3.0,
+                columns.column_width - 3.0,
                 height - 3.0,
                 4.0,
                 0.7,

@@ -21,7 +21,7 @@ from cardgen.render.legend import legend_height, legend_lines, place_legend
 from cardgen.render.marking import mark_page, place_foot, place_head
 from cardgen.render.notes import NoteLine, place_notes, share_out
 from cardgen.render.paper import Paper
-from cardgen.render.wording import note_sections, shows_temperature
+from cardgen.render.wording import continued_text, note_sections, shows_temperature
 from cardgen.tables.card import Card, CardTable
 
 SETTING_SIZES: Final = (18.0, 17.0, 16.0, 15.0, 14.0, 13.0, LEAST_SETTING)
@@ -249,7 +249,7 @@ def _fits(edition: Edition, room: _Room, style: Style, parts: tuple[Part, ...]) 
     if not all(grid.columns.fits for grid in grids):
         return False
     whole = all(_is_whole(card, part) for part in parts)
-    continued = "" if whole else f"Continued from page {_MANY}. Continued on page {_MANY}."
+    continued = "" if whole else continued_text(_MANY, _MANY)
     marking = mark_page(
         edition, _tables(card, parts), page=_MANY, pages=_MANY, measure=room.measure
     )
@@ -279,12 +279,10 @@ def _continued(card: Card, plan: Plan, index: int, part: Part) -> str:
     """Return which pages hold the rest of a table."""
     pages = [k + 1 for k, parts in enumerate(plan) for p in parts if p.table == part.table]
     here = pages.index(index + 1)
-    pieces = []
-    if here > 0:
-        pieces.append(f"Continued from page {pages[here - 1]}.")
-    if here + 1 < len(pages):
-        pieces.append(f"Continued on page {pages[here + 1]}.")
-    return " ".join(pieces)
+    return continued_text(
+        pages[here - 1] if here > 0 else None,
+        pages[here + 1] if here + 1 < len(pages) else None,
+    )
 
 
 def _table_page(
@@ -318,7 +316,7 @@ def _notes_page(
     x, measure = room.left(page), room.measure
     tables = edition.card.tables
     marking = mark_page(edition, tables, page=page, pages=pages, measure=measure)
-    continued = f"Continued on page {page + 1}." if page < pages else ""
+    continued = continued_text(None, page + 1 if page < pages else None)
     boxes = (
         *place_head(marking, x=x, top=room.top, measure=measure),
         *place_notes(lines, x=x, top=room.top - marking.head_height, continued=continued),

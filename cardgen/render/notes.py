@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import Final
+from typing import Final, Literal
 
 from cardgen.render.boxes import Box, Run
 from cardgen.render.columns import LEADING, NOTE
@@ -11,8 +11,9 @@ from cardgen.render.fonts import wrap
 from cardgen.tables.card import Section
 
 SECTION_SIZE: Final = 11.0
+INDENT: Final = {"title": 0.0, "first": 6.0, "more": 15.0}  # [pt]
 
-NoteLine = tuple[str, bool]  # text, and whether it heads a section
+NoteLine = tuple[str, Literal["title", "first", "more"]]  # first and further lines of one note
 
 
 def _blocks(sections: Sequence[Section], measure: float) -> list[list[NoteLine]]:
@@ -20,18 +21,19 @@ def _blocks(sections: Sequence[Section], measure: float) -> list[list[NoteLine]]
     blocks: list[list[NoteLine]] = []
     for section in sections:
         pending: list[NoteLine] = [
-            (line, True) for line in wrap(section.title, "bold", size=SECTION_SIZE, measure=measure)
+            (line, "title")
+            for line in wrap(section.title, "bold", size=SECTION_SIZE, measure=measure)
         ]
         for text in section.lines:
-            lines = wrap(text, "regular", size=NOTE, measure=measure - NOTE)
-            pending.extend((line, False) for line in lines)
+            first, *more = wrap(text, "regular", size=NOTE, measure=measure - INDENT["more"])
+            pending += [(first, "first"), *((line, "more") for line in more)]
             blocks.append(pending)
             pending = []
     return blocks
 
 
 def _height(line: NoteLine) -> float:
-    return LEADING * (SECTION_SIZE + 4.0 if line[1] else NOTE)
+    return LEADING * (SECTION_SIZE + 4.0 if line[1] == "title" else NOTE)
 
 
 def share_out(
@@ -48,8 +50,8 @@ def share_out(
 
     Returns
     -------
-    tuple of tuple of (str, bool)
-        Per page its lines, and whether each heads a section [-]
+    tuple of tuple of (str, str)
+        Per page its lines and what each is [-]
     """
     limit = height - LEADING * NOTE  # room to say that the notes go on
     pages: list[list[NoteLine]] = [[]]
@@ -74,8 +76,8 @@ def place_notes(
 
     Parameters
     ----------
-    lines : sequence of (str, bool)
-        Lines, and whether each heads a section [-]
+    lines : sequence of (str, str)
+        Lines and what each is [-]
     x, top : float
         Upper left corner [pt]
     continued : str
@@ -89,12 +91,12 @@ def place_notes(
     boxes: list[Box] = []
     y = top
     for line in lines:
-        text, heads = line
+        text, kind = line
         y -= _height(line)
-        if heads:
+        if kind == "title":
             boxes.append(Run(x, y, text, "bold", SECTION_SIZE))
         else:
-            boxes.append(Run(x + NOTE, y, text, "regular", NOTE))
+            boxes.append(Run(x + INDENT[kind], y, text, "regular", NOTE))
     if continued:
         boxes.append(Run(x, y - LEADING * NOTE, continued, "bold", NOTE))
     return tuple(boxes)

@@ -106,7 +106,7 @@ def cell_texts(card: Card, table: CardTable, at: tuple[int, int, int]) -> tuple[
     Returns
     -------
     tuple of str
-        Pressure, the full-throttle mark if any, fuel flow and speed; or one mark [-]
+        Pressure, fuel flow, speed and the full-throttle mark if any; or one mark [-]
     """
     state = CellState(int(table.state[at]))
     if state is CellState.FORBIDDEN:
@@ -119,7 +119,7 @@ def cell_texts(card: Card, table: CardTable, at: tuple[int, int, int]) -> tuple[
     flow = number(float(table.fuel_flow[at]), card.decimals.fuel_flow)
     speed = number(float(table.true_airspeed[at]), card.decimals.speed)
     if state is CellState.FULL_THROTTLE:
-        return pressure, full_throttle_mark(float(table.percent_power[at])), flow, speed
+        return pressure, flow, speed, full_throttle_mark(float(table.percent_power[at]))
     return pressure, flow, speed
 
 
@@ -144,7 +144,7 @@ def percent(power_fraction: float) -> str:
 def mass_text(card: Card, mass: float) -> str:
     """Return a mass [kg] in the unit of the card."""
     unit = card.choices.units.mass
-    return f"{number(float(to_unit(mass, unit, dimension='mass')))} {sign(unit)}"
+    return f"{number(float(to_unit(mass, unit, dimension='mass')))}\N{NO-BREAK SPACE}{sign(unit)}"
 
 
 def basis_text(table: CardTable) -> str:
@@ -178,8 +178,7 @@ def legend(card: Card, states: Iterable[tuple[CellState, int]]) -> tuple[tuple[s
         lines.append(
             (
                 FULL_THROTTLE,
-                "Full throttle: the power asked is out of reach. The boxed percentage is the power "
-                "it gives.",
+                "Full throttle; the power asked is out of reach, boxed is the power it gives.",
             )
         )
     if CellState.OUT_OF_REACH in kinds:
@@ -250,6 +249,16 @@ def issue_text(identity: Identity, issue: int) -> str:
 def page_text(page: int, pages: int) -> str:
     """Return the page number out of how many."""
     return f"page {page} of {pages}"
+
+
+def continued_text(before: int | None, after: int | None) -> str:
+    """Return which pages hold what comes before and after, "" where there is neither."""
+    pieces = []
+    if before is not None:
+        pieces.append(f"Continued from page {before}.")
+    if after is not None:
+        pieces.append(f"Continued on page {after}.")
+    return " ".join(pieces)
 
 
 def digest_text(card: Card, issue: int, replaces: int | None) -> str:

@@ -1,0 +1,89 @@
+"""Reads the words of a finished PDF and where they stand; the only module that knows the reader."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from io import BytesIO
+
+from cardgen.errors import ReleaseError
+
+
+@dataclass(frozen=True, slots=True)
+class Word:
+    """One piece of text as it stands on a page [pt]."""
+
+    text: str
+    x: float
+    y: float
+    size: float
+    font: str
+
+
+def read_words(pdf: bytes) -> tuple[tuple[Word, ...], ...]:
+    """Return the words of every card page in reading order.
+
+    Parameters
+    ----------
+    pdf : bytes
+        A finished file [-]
+
+    Returns
+    -------
+    tuple of tuple of Word
+        Per card page its words; a landscape sheet is two pages [-]
+
+    Raises
+    ------
+    ReleaseError
+        The file cannot be read.
+    """
+    # Only a caller that reads back pays for loading the PDF reader.
+    from pypdf import PdfReader  # noqa: PLC0415
+    from pypdf.errors import PyPdfError  # noqa: PLC0415
+
+    pages: list[tuple[Word, ...]] = []
+    try:
+        for sheet in PdfReader(BytesIO(pdf)).pages:
+            words: list[Word] = []
+
+            def visit(  # noqa: PLR0917 the reader's signature
+                text: str,
+                cm: list[float],
+                tm: list[float],
+                font: dict[str, str] | None,
+                size: float,
+                words: list[Word] = words,
+            ) -> None:
+                if text.strip():
+                    x, y = cm[0] * tm[4] + cm[4], cm[3] * tm[5] + cm[5]
+                    name = str((font or {}).get("/BaseFont", ""))
+                    words.append(Word(" ".join(text.split()), x, y, size * tm[0] * cm[0], name))
+
+            sheet.extract_text(visitor_text=visit)
+            wide, high = float(sheet.mediabox.width), float(sheet.mediabox.height)
+            if wide > high:
+                pages.append(tuple(word for word in words if word.x < 0.5 * wide))
+                right = tuple(word for word in words if word.x >= 0.5 * wide)
+                if right:
+                    pages.append(right)
+            else:
+                pages.append(tuple(words))
+    except (PyPdfError, ValueError, KeyError, TypeError, AttributeError) as error:
+        raise ReleaseError(f"the finished card cannot be read back: {error}") from error
+    return tuple(pages)
+
+
+def page_texts(pdf: bytes) -> tuple[str, ...]:
+    """Return the text of every card page, one word group per line.
+
+    Parameters
+    ----------
+    pdf : bytes
+        A finished file [-]
+
+    Returns
+    -------
+    tuple of str
+        Text per page [-]
+    """
+    return tuple("\n".join(word.text for word in page) for page in read_words(pdf))
