@@ -90,9 +90,6 @@ def test_the_tables_of_one_card_share_their_letters() -> None:
     found = bars(ALL, EXACT, [lean, blades])
     lettered = [(reason.letter, reason.limit) for reason in found.reasons]
     assert lettered == [("A", "restricted_rpm"), ("B", "leaning")]
-        ("A", "restricted_rpm"),
-        ("B", "leaning"),
-    ]
     assert list(found.index[0]) == [-1, 1]
     assert list(found.index[1]) == [0, -1]
 
