@@ -60,7 +60,7 @@ class CruiseStatus(IntEnum):
     @property
     def word(self) -> str:
         """The reason word of the machine-readable output."""
-        return self.name.lower().replace("_", "-")
+        return self.name.lower()
 
 
 @dataclass(frozen=True, slots=True)

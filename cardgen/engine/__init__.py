@@ -21,6 +21,7 @@ from cardgen.engine.model import (
     full_throttle_manifold_pressure,
     manifold_pressure,
     power_line,
+    power_per_pressure,
     relative_air_flow,
     volumetric_efficiency_ratio,
 )
@@ -43,6 +44,7 @@ __all__ = [
     "full_throttle_manifold_pressure",
     "manifold_pressure",
     "power_line",
+    "power_per_pressure",
     "relative_air_flow",
     "relative_power",
     "volumetric_efficiency_ratio",

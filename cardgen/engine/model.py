@@ -379,7 +379,23 @@ def manifold_pressure(line: PowerLine, power: Floats) -> FloatArray:
     """
     charge = line.indicated * line.breath
     wanted = power + line.friction + (line.pumping + charge * line.residual) * line.exhaust
-    return np.asarray(wanted / (charge * (1.0 + line.residual) + line.pumping))
+    return np.asarray(wanted / power_per_pressure(line))
+
+
+def power_per_pressure(line: PowerLine) -> FloatArray:
+    """Brake power that one unit of manifold pressure adds.
+
+    Parameters
+    ----------
+    line : PowerLine
+        The engine at one rpm in one air [-]
+
+    Returns
+    -------
+    ndarray
+        Slope of the line [W/Pa]
+    """
+    return np.asarray(line.indicated * line.breath * (1.0 + line.residual) + line.pumping)
 
 
 def full_throttle_manifold_pressure(line: PowerLine, impact_pressure: Floats = 0.0) -> FloatArray:

@@ -2,6 +2,14 @@
 
 from cardgen.fit.estimate import Estimate, estimate
 from cardgen.fit.evidence import QUANTITIES, Evidence, standard_deviations
+from cardgen.fit.knowledge import (
+    EvidenceRange,
+    Knowledge,
+    carried_over,
+    evidence_range,
+    knowledge_from_fit,
+    knowledge_from_profile,
+)
 from cardgen.fit.model import Subject, cruise_of_rows, mixture_of_rows, predict
 from cardgen.fit.parameters import (
     PARTS,
@@ -19,12 +27,18 @@ __all__ = [
     "QUANTITIES",
     "Estimate",
     "Evidence",
+    "EvidenceRange",
+    "Knowledge",
     "Parameter",
     "Part",
     "Subject",
     "applied",
+    "carried_over",
     "cruise_of_rows",
     "estimate",
+    "evidence_range",
+    "knowledge_from_fit",
+    "knowledge_from_profile",
     "mixture_of_rows",
     "parameters",
     "predict",

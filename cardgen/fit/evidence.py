@@ -130,3 +130,14 @@ def standard_deviations(evidence: Evidence) -> FloatArray:
     """
     scatter = np.where(evidence.flight[:, None], _FLIGHT_SCATTER, _HANDBOOK_SCATTER)
     return np.asarray(np.sqrt(scatter**2 + evidence.rounding**2 / 12.0))
+
+
+def assumed_scatter() -> FloatArray:
+    """Scatter assumed where no evidence shows it.
+
+    Returns
+    -------
+    ndarray, shape (3,)
+        Standard deviations, SI, in the order of `QUANTITIES`
+    """
+    return np.array(_FLIGHT_SCATTER)

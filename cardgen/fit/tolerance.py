@@ -42,7 +42,7 @@ def tolerances(
         Parameters [-]
     covariance : ndarray, shape (p, p)
         Their covariance [-]
-    scatter : ndarray, shape (q,)
+    scatter : ndarray, shape (q,) or (n, q)
         Deviation of each quantity besides the parameters [SI]
 
     Returns
