@@ -379,6 +379,13 @@ def test_least_pressure_beyond_its_curve_is_unknown() -> None:
     assert findings.verdict_at() == "unknown"
 
 
+def test_least_pressure_charted_over_part_of_the_guard_band_is_unknown_or_broken() -> None:
+    """2690 may be 2740, past the chart's 2700: enough pressure is unknown, too little is not."""
+    setting = flown(indicated_rpm=2690.0, indicated_manifold_pressure=np.array([20.0, 14.0]) * INHG)
+    verdict = check(only(least_manifold_pressure=(LEAST,)), UNMEASURED_GAUGES, setting).verdict
+    assert list(verdict) == [Verdict.UNKNOWN, Verdict.OUTSIDE]
+
+
 def test_one_least_pressure_holds_at_every_rpm() -> None:
     """A number is not a curve with an end."""
     number = replace(LEAST, rpm=(2400.0,), manifold_pressure=(15.0 * INHG,))
