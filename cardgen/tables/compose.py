@@ -1,0 +1,340 @@
+"""The content of one aircraft's card, computed.
+
+A printed cell is a setting that a pilot can make: manifold pressure is rounded to the printed step
+first, and fuel flow, airspeed and every verdict are those of the rounded setting, so that the card
+and a check of what it prints cannot disagree.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from cardgen.atmosphere import pressure_altitude_at_density_altitude, standard_temperature
+from cardgen.cruise import CruiseStatus
+from cardgen.limits import Findings, Verdict
+from cardgen.limits.bars import bars_of
+from cardgen.tables.card import Card, CardTable, CellState, Reason, Section
+from cardgen.tables.choices import CardChoices
+from cardgen.tables.printed import (
+    decimals,
+    fuel_flow_in,
+    pressure_from,
+    rounded,
+    rounded_down,
+    rounded_up,
+    temperature_step_in,
+)
+from cardgen.tables.rows import situation_of
+from cardgen.tables.solution import Model, Situation, Solution, judge, solve
+from cardgen.units import to_unit
+
+FloatArray = npt.NDArray[np.float64]
+BoolArray = npt.NDArray[np.bool_]
+
+TEMPERATURE_SPREAD: Final = 20.0
+"""Departure from standard over which a density-altitude card states its error, either way [K]."""
+
+
+@dataclass(frozen=True, slots=True)
+class Words:
+    """What a card says besides its numbers.
+
+    Parameters
+    ----------
+    percent_of : str
+        What percent power is of [-]
+    stamps : tuple of str
+        Warnings printed large on every page [-]
+    sections : tuple of Section
+        What stands on the notes page before the notes that come from the numbers [-]
+    digest : str
+        Digest of everything the numbers come from [-]
+    """
+
+    percent_of: str
+    stamps: tuple[str, ...]
+    sections: tuple[Section, ...]
+    digest: str
+
+
+@dataclass(frozen=True, slots=True)
+class _Block:
+    """All tables of one mixture; arrays have shape (mass, power, altitude, temperature, rpm)."""
+
+    mixture: int
+    full_throttle: BoolArray
+    solution: Solution
+    findings: Findings
+    pressure: FloatArray  # printed
+    tolerance: tuple[FloatArray, FloatArray, FloatArray]  # SI
+
+
+def compose(model: Model, choices: CardChoices, *, words: Words) -> Card:
+    """Compute a card.
+
+    Parameters
+    ----------
+    model : Model
+        The aircraft [-]
+    choices : CardChoices
+        What the card shows [-]
+    words : Words
+        What it says besides [-]
+
+    Returns
+    -------
+    Card
+        Its content, rounded as printed [-]
+    """
+    blocks = [_block(model, choices, model.mixture_index(name)) for name in choices.mixtures]
+    barred = bars_of([block.findings for block in blocks])
+    tables = tuple(
+        table
+        for block, reasons in zip(blocks, barred.index, strict=True)
+        for table in _tables(model, choices, block, reasons)
+    )
+    notes = (*_temperature_notes(model, choices, blocks), _humidity_note(choices))
+    unchecked = Section(
+        "Not checked, because the profile does not state it",
+        tuple(f"{text}: look it up in the approved flight manual" for text in barred.not_checked),
+    )
+    return Card(
+        choices=choices,
+        decimals=decimals(choices.units),
+        tables=tables,
+        reasons=tuple(Reason(bar.letter, bar.text, bar.source) for bar in barred.reasons),
+        percent_of=words.percent_of,
+        stamps=words.stamps,
+        notes=notes,
+        digest=words.digest,
+        sections=(*words.sections, unchecked),
+    )
+
+
+def _situation(model: Model, choices: CardChoices, mixture: int) -> Situation:
+    """Where the cells of one mixture are."""
+    by_density = choices.altitude_kind == "density"
+    deviation = np.zeros(1) if by_density else np.array(choices.isa_deviation)
+    return situation_of(
+        np.array(choices.altitude)[:, None, None],
+        deviation[None, :, None],
+        by_density=by_density,
+        mass=np.array(choices.mass)[:, None, None, None, None],
+        mixture=mixture,
+    )
+
+
+def _block(model: Model, choices: CardChoices, mixture: int) -> _Block:
+    """Solve the tables of one mixture, rounded to what is printed."""
+    situation = _situation(model, choices, mixture)
+    rpm = np.array(choices.rpm)
+    fraction = np.array(choices.power_fraction)[:, None, None, None]
+    exact = solve(model, situation, indicated_rpm=rpm, power_fraction=fraction)
+    if exact.tolerance is None:
+        raise AssertionError("tolerances were asked for")
+    unit, places = choices.units.pressure, decimals(choices.units).pressure
+    reads = np.asarray(to_unit(exact.indicated_manifold_pressure, unit))
+    full = exact.point.full_throttle
+    # At full throttle the lever is against its stop; what the gauge then reads is information.
+    nearest = np.where(full, rounded_down(reads, places), rounded(reads, places))
+    other = np.where(nearest > reads, rounded_down(reads, places), rounded_up(reads, places))
+    first = _at(model, situation, rpm, exact=exact, printed=nearest, unit=unit)
+    second = _at(model, situation, rpm, exact=exact, printed=other, unit=unit)
+    # Near a limit the step away from it is taken, if that is allowed.
+    swap = ~full & (first[1].verdict == Verdict.OUTSIDE) & (second[1].verdict != Verdict.OUTSIDE)
+    if swap.any():
+        nearest = np.where(swap, other, nearest)
+        first = _at(model, situation, rpm, exact=exact, printed=nearest, unit=unit)
+    tolerance = exact.tolerance
+    return _Block(
+        mixture=mixture,
+        full_throttle=full,
+        solution=first[0],
+        findings=first[1],
+        pressure=nearest,
+        tolerance=(tolerance.manifold_pressure, tolerance.fuel_flow, tolerance.true_airspeed),
+    )
+
+
+def _at(
+    model: Model,
+    situation: Situation,
+    rpm: FloatArray,
+    *,
+    exact: Solution,
+    printed: FloatArray,
+    unit: str,
+) -> tuple[Solution, Findings]:
+    """Solution and findings at printed manifold pressures, at full throttle where that is it."""
+    full = exact.point.full_throttle
+    asked = np.where(full, exact.indicated_manifold_pressure, pressure_from(printed, unit))
+    solution = solve(
+        model, situation, indicated_rpm=rpm, indicated_pressure=asked, with_tolerance=False
+    )
+    return solution, judge(model, solution)
+
+
+def _states(block: _Block, barred: BoolArray) -> npt.NDArray[np.int8]:
+    """State of every cell; a broken limit wins over everything else."""
+    point = block.solution.point
+    state = np.full(point.power.shape, CellState.VALUE, dtype=np.int8)
+    state[block.full_throttle] = CellState.FULL_THROTTLE
+    for judgement in block.findings.judgements:
+        if judgement.limit == "evidence":
+            beyond = np.broadcast_to(judgement.verdict != Verdict.INSIDE, state.shape)
+            state[beyond] = CellState.OUTSIDE_EVIDENCE
+    unsolved = (point.status == CruiseStatus.NO_LEVEL_FLIGHT) | (
+        point.status == CruiseStatus.OUTSIDE_MODEL
+    )
+    state[barred] = CellState.FORBIDDEN
+    state[unsolved] = CellState.OUT_OF_REACH
+    return state
+
+
+def _tables(
+    model: Model, choices: CardChoices, block: _Block, reasons: npt.NDArray[np.int16]
+) -> list[CardTable]:
+    """Cut a block into its tables."""
+    units, places = choices.units, decimals(choices.units)
+    density = model.subject.aircraft.engine.fuel_density
+    mixture = model.subject.mixtures[block.mixture]
+    point = block.solution.point
+    state = _states(block, reasons >= 0)
+    shown = (state == CellState.VALUE) | (state == CellState.FULL_THROTTLE)
+    flow = rounded_up(
+        fuel_flow_in(point.fuel_flow, units.fuel_flow, fuel_density=density), places.fuel_flow
+    )
+    speed = rounded_down(np.asarray(to_unit(point.true_airspeed, units.speed)), places.speed)
+    pressure_tolerance, flow_tolerance, speed_tolerance = block.tolerance
+    spreads = (
+        np.asarray(to_unit(pressure_tolerance, units.pressure)),
+        fuel_flow_in(flow_tolerance, units.fuel_flow, fuel_density=density),
+        np.asarray(to_unit(speed_tolerance, units.speed)),
+    )
+    situation = block.solution.situation
+    temperature = np.asarray(to_unit(np.asarray(situation.temperature), units.temperature))
+    by_density = choices.altitude_kind == "density"
+    deviation = (0.0,) if by_density else choices.isa_deviation
+    tables = []
+    for i, mass in enumerate(choices.mass):
+        for j, fraction in enumerate(choices.power_fraction):
+            seen = shown[i, j]
+            tables.append(
+                CardTable(
+                    mixture=mixture.name,
+                    mixture_basis=mixture.basis,
+                    power_fraction=fraction,
+                    mass=mass,
+                    altitude=tuple(
+                        float(value)
+                        for value in np.round(
+                            np.asarray(to_unit(np.array(choices.altitude), units.altitude)), 6
+                        )
+                    ),
+                    isa_deviation=tuple(
+                        float(value)
+                        for value in np.round(
+                            temperature_step_in(np.array(deviation), units.temperature), 6
+                        )
+                    ),
+                    outside_air_temperature=rounded(temperature[..., 0], 0),
+                    rpm=choices.rpm,
+                    state=state[i, j],
+                    reason=reasons[i, j].astype(np.int8),
+                    manifold_pressure=np.where(seen, block.pressure[i, j], np.nan),
+                    fuel_flow=np.where(seen, flow[i, j], np.nan),
+                    true_airspeed=np.where(seen, speed[i, j], np.nan),
+                    percent_power=np.where(
+                        seen, 100.0 * block.solution.power_fraction[i, j], np.nan
+                    ),
+                    tolerance=_largest(spreads, seen, (i, j)),
+                )
+            )
+    return tables
+
+
+def _largest(
+    spreads: Sequence[FloatArray], seen: BoolArray, at: tuple[int, int]
+) -> tuple[float, float, float]:
+    """Largest tolerance of each quantity among the numbers of a table, 0 where it has none."""
+    pressure, flow, speed = (float(np.max(spread[at][seen], initial=0.0)) for spread in spreads)
+    return pressure, flow, speed
+
+
+def _temperature_notes(
+    model: Model, choices: CardChoices, blocks: Sequence[_Block]
+) -> tuple[str, ...]:
+    """What a density-altitude card assumes of temperature, and the largest error it makes."""
+    if choices.altitude_kind != "density":
+        return ()
+    units = choices.units
+    density = model.subject.aircraft.engine.fuel_density
+    worst = np.zeros(3)
+    altitude = np.array(choices.altitude)[:, None, None]
+    spread = np.array([-TEMPERATURE_SPREAD, TEMPERATURE_SPREAD])[:, None]
+    for block in blocks:
+        pressure = pressure_altitude_at_density_altitude(altitude, spread)
+        moved = solve(
+            model,
+            Situation(
+                pressure_altitude=pressure,
+                temperature=standard_temperature(pressure) + spread,
+                mass=block.solution.situation.mass,
+                mixture=block.mixture,
+            ),
+            indicated_rpm=np.array(choices.rpm),
+            power_fraction=np.array(choices.power_fraction)[:, None, None, None],
+            with_tolerance=False,
+        )
+        still = block.solution
+        both = ~block.full_throttle & ~moved.point.full_throttle
+        exact = solve(
+            model,
+            still.situation,
+            indicated_rpm=np.array(choices.rpm),
+            power_fraction=np.array(choices.power_fraction)[:, None, None, None],
+            with_tolerance=False,
+        )
+        changes = (
+            to_unit(
+                moved.indicated_manifold_pressure - exact.indicated_manifold_pressure,
+                units.pressure,
+            ),
+            fuel_flow_in(
+                moved.point.fuel_flow - exact.point.fuel_flow,
+                units.fuel_flow,
+                fuel_density=density,
+            ),
+            to_unit(moved.point.true_airspeed - exact.point.true_airspeed, units.speed),
+        )
+        for place, change in enumerate(changes):
+            found = np.where(both, np.abs(change), 0.0)
+            worst[place] = max(worst[place], float(np.nanmax(found, initial=0.0)))
+    places = decimals(units)
+    pressure_error, flow_error, speed_error = (
+        float(rounded_up(np.array(value), count))
+        for value, count in zip(worst, (places.pressure, places.fuel_flow, 0), strict=True)
+    )
+    step = float(temperature_step_in(TEMPERATURE_SPREAD, units.temperature))
+    degree = {"degC": "°C", "degF": "°F"}.get(units.temperature, units.temperature)
+    return (
+        "Rows are density altitudes, computed in air of standard temperature. In air up to "
+        f"{step:.0f} {degree} warmer or colder, at the same density altitude, the right numbers "
+        f"differ by at most {pressure_error:.{places.pressure}f} {units.pressure}, "
+        f"{flow_error:.{places.fuel_flow}f} {units.fuel_flow} and {speed_error:.0f} {units.speed}.",
+    )
+
+
+def _humidity_note(choices: CardChoices) -> str:
+    """What the card assumes of humidity."""
+    if choices.relative_humidity:
+        return f"Computed for {100.0 * choices.relative_humidity:.0f} % relative humidity."
+    return (
+        "Computed for dry air. Humid air gives less power at the same setting: up to some 4 % at "
+        "30 °C and saturation."
+    )

@@ -1,0 +1,189 @@
+"""Printed numbers: units, decimal places, and rounding to the safe side."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from cardgen.limits import MessageUnits
+from cardgen.tables.card import Decimals
+from cardgen.tables.choices import UnitSet
+from cardgen.units import find_unit, from_unit, to_unit
+
+FloatArray = npt.NDArray[np.float64]
+
+# Places finer than a pilot can read off the gauge are noise; coarser ones lose what was computed.
+_PLACES: Final[Mapping[str, int]] = {
+    "inHg": 1,
+    "cmHg": 1,
+    "hPa": 0,
+    "kPa": 1,
+    "mmHg": 0,
+    "gal/h": 1,
+    "L/h": 0,
+    "lb/h": 0,
+    "kg/h": 0,
+}
+
+# A value within this share of a printed step of a whole step is that step: floating-point noise
+# must not turn 10.0 into 10.1.
+_HAIR: Final = 1e-6
+
+
+def decimals(units: UnitSet) -> Decimals:
+    """Decimal places that go with a set of units.
+
+    Parameters
+    ----------
+    units : UnitSet
+        Units of a card [-]
+
+    Returns
+    -------
+    Decimals
+        Places for pressure, fuel flow and speed [-]
+    """
+    return Decimals(
+        pressure=_PLACES.get(units.pressure, 1),
+        fuel_flow=_PLACES.get(units.fuel_flow, 1),
+        speed=0,
+    )
+
+
+def rounded(values: FloatArray, places: int) -> FloatArray:
+    """Nearest printed step.
+
+    Parameters
+    ----------
+    values : ndarray
+        Values in the printed unit [-]
+    places : int
+        Decimal places [-]
+
+    Returns
+    -------
+    ndarray
+        Values that print exactly with that many places [-]
+    """
+    return np.asarray(np.round(values, places))
+
+
+def rounded_up(values: FloatArray, places: int) -> FloatArray:
+    """Next printed step not below a value.
+
+    Parameters
+    ----------
+    values : ndarray
+        Values in the printed unit [-]
+    places : int
+        Decimal places [-]
+
+    Returns
+    -------
+    ndarray
+        Values that print exactly with that many places [-]
+    """
+    scale = 10.0**places
+    return np.asarray(np.round(np.ceil(values * scale - _HAIR) / scale, places))
+
+
+def rounded_down(values: FloatArray, places: int) -> FloatArray:
+    """Next printed step not above a value.
+
+    Parameters
+    ----------
+    values : ndarray
+        Values in the printed unit [-]
+    places : int
+        Decimal places [-]
+
+    Returns
+    -------
+    ndarray
+        Values that print exactly with that many places [-]
+    """
+    scale = 10.0**places
+    return np.asarray(np.round(np.floor(values * scale + _HAIR) / scale, places))
+
+
+def fuel_flow_in(mass_flow: FloatArray, unit: str, *, fuel_density: float) -> FloatArray:
+    """Fuel flow in a unit of volume or of mass.
+
+    Parameters
+    ----------
+    mass_flow : ndarray
+        Fuel flow [kg/s]
+    unit : str
+        Unit of volume or mass per time [-]
+    fuel_density : float
+        Density of the fuel [kg/m³]
+
+    Returns
+    -------
+    ndarray
+        Fuel flow in that unit [-]
+    """
+    if find_unit(unit).dimension == "mass flow":
+        return np.asarray(to_unit(mass_flow, unit))
+    return np.asarray(to_unit(mass_flow / fuel_density, unit))
+
+
+def temperature_step_in(step: npt.ArrayLike, unit: str) -> FloatArray:
+    """Temperature difference in the degrees of a scale.
+
+    Parameters
+    ----------
+    step : array_like
+        Difference [K]
+    unit : str
+        Unit of temperature [-]
+
+    Returns
+    -------
+    ndarray
+        Difference in that unit [-]
+    """
+    return np.asarray(to_unit(np.asarray(step), unit, dimension="temperature difference"))
+
+
+def pressure_from(values: FloatArray, unit: str) -> FloatArray:
+    """Pressure from a printed unit.
+
+    Parameters
+    ----------
+    values : ndarray
+        Printed pressures [-]
+    unit : str
+        Their unit [-]
+
+    Returns
+    -------
+    ndarray
+        Pressure [Pa]
+    """
+    return np.asarray(from_unit(values, unit))
+
+
+def message_units(units: UnitSet) -> MessageUnits:
+    """Units of messages that go with the units of a card.
+
+    Parameters
+    ----------
+    units : UnitSet
+        Units of a card [-]
+
+    Returns
+    -------
+    MessageUnits
+        The same, and the unit of power that goes with them [-]
+    """
+    return MessageUnits(
+        pressure=units.pressure,
+        speed=units.speed,
+        altitude=units.altitude,
+        temperature=units.temperature,
+        power="hp" if units.pressure == "inHg" else "kW",
+    )
