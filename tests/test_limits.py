@@ -41,6 +41,7 @@ from cardgen.limits import (
     Verdict,
     check,
     gauge_notes,
+    statements,
 )
 from cardgen.limits.gauges import UNMEASURED_GAUGES
 from cardgen.limits.kinds import CATEGORIES, LeaningCeiling, RpmRange, StatedNone
@@ -436,6 +437,23 @@ def test_one_continuous_rating_must_cover_a_setting_as_a_whole() -> None:
     assert list(check(only(ratings=(slow, fast)), EXACT, setting).verdict) == [0, 0, 3]
 
 
+def test_a_rating_is_told_by_what_comes_nearest_to_it() -> None:
+    """Neither 150 hp of 230 nor 23 inHg matter where 2590 rpm of 2600 do."""
+    found = _one(check(only(ratings=(CONTINUOUS,)), EXACT, flown(indicated_rpm=2590.0)), "ratings")
+    assert "10 rpm below the 2600 rpm of Maximum continuous" in found.message
+    assert found.margin == pytest.approx(100.0 * 10.0 / 2600.0)
+
+
+def test_everything_that_exceeds_a_rating_is_told() -> None:
+    """5 hp and 80 rpm too much are two reasons to reduce."""
+    setting = flown(indicated_rpm=2680.0, power=235.0 * HORSEPOWER)
+    found = _one(check(only(ratings=(CONTINUOUS,)), EXACT, setting), "ratings")
+    assert (
+        "5 hp above the 230 hp of Maximum continuous and "
+        "80 rpm above the 2600 rpm of Maximum continuous"
+    ) in found.message
+
+
 def test_a_rating_that_one_source_limits_in_time_is_not_continuous() -> None:
     """The more restrictive of two statements of one rating."""
     limited = replace(CONTINUOUS, source=SHEET, time_limit=1800.0)
@@ -698,6 +716,35 @@ def test_gauge_notes_say_what_was_not_measured() -> None:
 def test_a_source_is_cited_without_empty_parts() -> None:
     """Document, section and revision, as far as they are given."""
     assert str(Source("Manual", "", "rev 2")) == "Manual, rev 2"
+
+
+def test_a_bare_section_or_revision_is_cited_with_what_it_counts() -> None:
+    """ "note 4, 2" would leave the reader to guess."""
+    assert str(Source("Sheet", "note 4", "2")) == "Sheet, note 4, revision 2"
+    assert str(Source("Manual", "2.2", "C")) == "Manual, section 2.2, revision C"
+    assert str(MANUAL) == "Invented flight manual, section 2, revision 3"
+
+
+def test_every_stated_limit_is_listed_in_words_with_wording_and_source() -> None:
+    """For the notes of a card: one line for each, what does not apply among them."""
+    listed = statements(replace(ALL, airspeed=()), MessageUnits())
+    assert [s.category for s in listed] == [
+        "restricted_rpm",
+        "manifold_pressure_curve",
+        "ratings",
+        "ratings",
+        "rpm_range",
+        "least_manifold_pressure",
+        "leaning",
+        "altitude_schedule",
+        "altitude",
+        "temperature",
+    ]
+    assert listed[0].text == "restricted 2100-2350 rpm"
+    assert (listed[0].wording, listed[0].source) == (BLADES.wording, str(SHEET))
+    none = statements(only(restricted_rpm=(BLADES,)), MessageUnits())[-1]
+    assert none.text == "approved temperatures: none"
+    assert none.source == str(MANUAL)
 
 
 def test_a_hundred_thousand_settings_take_well_under_a_second() -> None:

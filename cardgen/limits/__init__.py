@@ -7,7 +7,7 @@ from cardgen.limits.flown import Evidence, Flown
 from cardgen.limits.gauges import GaugeError, Gauges
 from cardgen.limits.kinds import Limits, Source
 from cardgen.limits.nearby import NearbySetting, allowed_nearby
-from cardgen.limits.statement import gauge_notes
+from cardgen.limits.statement import Statement, gauge_notes, statements
 from cardgen.limits.wording import MessageUnits
 
 __all__ = [
@@ -24,10 +24,12 @@ __all__ = [
     "MessageUnits",
     "NearbySetting",
     "Source",
+    "Statement",
     "Verdict",
     "allowed_nearby",
     "bars",
     "bars_of",
     "check",
     "gauge_notes",
+    "statements",
 ]

@@ -45,8 +45,11 @@ class Source:
     revision: str = ""
 
     def __str__(self) -> str:
-        """Return the citation as printed."""
-        return ", ".join(part for part in (self.document, self.section, self.revision) if part)
+        """Return the citation as printed, a bare "2.2" or "C" with what it counts."""
+        section = f"section {self.section}" if self.section[:1].isdigit() else self.section
+        bare = len(self.revision.split()) == 1
+        revision = f"revision {self.revision}" if bare else self.revision
+        return ", ".join(part for part in (self.document, section, revision) if part)
 
 
 @dataclass(frozen=True, slots=True)

@@ -10,8 +10,10 @@ import numpy as np
 
 from cardgen.limits.case import Case, Judge, beyond, stated
 from cardgen.limits.finding import Index, Judgement
+from cardgen.limits.flown import Span
 from cardgen.limits.gauges import indicated_rpm_interval
 from cardgen.limits.judge import (
+    SLACK,
     judge_altitude_schedule,
     judge_least_manifold_pressure,
     judge_manifold_pressure_curve,
@@ -21,9 +23,9 @@ from cardgen.limits.judge import (
     stricter,
 )
 from cardgen.limits.kinds import Category, RestrictedRpm
-from cardgen.limits.ratings import ceilings, judge_ratings
+from cardgen.limits.ratings import Ceiling, ceilings, judge_ratings, within
 from cardgen.limits.statement import duration, state_all
-from cardgen.limits.wording import above, below, distance
+from cardgen.limits.wording import Measure, above, amount, below, distance
 
 
 def _restricted_rpm(case: Case) -> Iterator[Judgement]:
@@ -107,10 +109,9 @@ def _ratings(case: Case) -> Iterator[Judgement]:
     if not case.limits.ratings:
         return
     every = ceilings(case.limits.ratings)
-    limited = [c for c in every if c.time_limit is not None]
+    continuous = [c for c in every if c.time_limit is None]
 
     def words(index: Index, margin: float) -> str:
-        power = float(case.spans.power.high[index])
         said = [
             case.model_words("power", case.spans.power, "power", index),
             case.rpm_words(index),
@@ -119,22 +120,16 @@ def _ratings(case: Case) -> Iterator[Judgement]:
         text = ", ".join(said)
         if np.isnan(margin):
             return f"{text}: cannot be compared"
-        if len(limited) == len(every):
+        if not continuous:
             return f"{text}: only ratings with a time limit are stated, none for continuous use"
-        size = distance(margin, "share", units=case.units)
-        if not size:
-            return f"{text}: on the greatest continuous rating"
-        if margin > 0.0:
-            return f"{text}: {size} below the greatest continuous rating"
-        text = f"{text}: {size} above the greatest continuous rating"
-        rpm, pressure = case.spans.rpm.high[index], case.spans.manifold_pressure.high[index]
+        nearest = max(continuous, key=lambda c: _least_room(case, c, index))
+        text = f"{text}: {_against(case, nearest, index)}"
+        if margin >= -SLACK:
+            return text
         times = [
             f"{duration(c.time_limit)} ({c.name})"
-            for c in limited
-            if c.time_limit is not None
-            and power <= c.power
-            and rpm <= c.rpm
-            and pressure <= c.manifold_pressure
+            for c in every
+            if c.time_limit is not None and _least_room(case, c, index) >= -SLACK
         ]
         return f"{text}, allowed for {', '.join(times)} only" if times else text
 
@@ -148,6 +143,30 @@ def _ratings(case: Case) -> Iterator[Judgement]:
         words=words,
         statement="; ".join(state_all(group, case.units)[0] for group in groups),
     )
+
+
+def _least_room(case: Case, ceiling: Ceiling, index: Index) -> float:
+    """Return the least room of one setting under a rating, as a share of the rated value."""
+    return float(within(ceiling, case.spans)[2][index])
+
+
+def _against(case: Case, ceiling: Ceiling, index: Index) -> str:
+    """Return what of one setting exceeds a rating, or else comes nearest to it."""
+    spans = case.spans
+    rated: tuple[tuple[Measure, float, Span], ...] = (
+        ("power", ceiling.power, spans.power),
+        ("rpm", ceiling.rpm, spans.rpm),
+        ("pressure", ceiling.manifold_pressure, spans.manifold_pressure),
+    )
+    rooms: list[tuple[float, str]] = []
+    for measure, greatest, span in rated:
+        room = greatest - float(span.high[index])
+        if np.isfinite(room):
+            limit = f"the {amount(greatest, measure, units=case.units)} of {ceiling.name}"
+            words = below(room, measure, limit, units=case.units, scale=greatest)
+            rooms.append((room / greatest, words))
+    exceeded = [words for room, words in rooms if room < -SLACK]
+    return " and ".join(exceeded) or min(rooms)[1]
 
 
 def _rpm_range(case: Case) -> Iterator[Judgement]:

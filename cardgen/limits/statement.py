@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 from typing import Final, assert_never
 
 from cardgen.limits.gauges import GaugeError, Gauges
 from cardgen.limits.kinds import (
+    CATEGORIES,
     AirspeedLimit,
     AltitudeEnvelope,
     AltitudeSchedule,
@@ -14,6 +16,7 @@ from cardgen.limits.kinds import (
     LeaningCeiling,
     LeastManifoldPressure,
     Limit,
+    Limits,
     ManifoldPressureCurve,
     Rating,
     RestrictedRpm,
@@ -178,7 +181,8 @@ def state_all(group: Sequence[Limit], units: MessageUnits) -> tuple[str, str]:
     each = "; ".join(
         f"{text} ({limit.source})" for text, limit in zip(statements, group, strict=True)
     )
-    return f"sources disagree, the most restrictive is applied: {each}", sources
+    cause = "sources disagree" if len({limit.source for limit in group}) > 1 else "stated twice"
+    return f"{cause}, the most restrictive is applied: {each}", sources
 
 
 def gauge_notes(gauges: Gauges, units: MessageUnits) -> tuple[str, ...]:
@@ -208,3 +212,43 @@ def gauge_notes(gauges: Gauges, units: MessageUnits) -> tuple[str, ...]:
         note("Tachometer", gauges.tachometer, "rpm"),
         note("Manifold-pressure gauge", gauges.manifold_pressure, "pressure"),
     )
+
+
+@dataclass(frozen=True, slots=True)
+class Statement:
+    """One limit as a card's notes print it: the category, the limit, its wording and its source."""
+
+    category: Category
+    text: str
+    wording: str
+    source: str
+
+
+def statements(limits: Limits, units: MessageUnits) -> tuple[Statement, ...]:
+    """Return every stated limit in words, one entry for each source.
+
+    Parameters
+    ----------
+    limits : Limits
+        What the sources state [-]
+    units : MessageUnits
+        The units of the text [-]
+
+    Returns
+    -------
+    tuple of Statement
+        In the order of categories, what a source says does not apply among them [-]
+    """
+    found = []
+    for category in CATEGORIES:
+        stated: tuple[Limit, ...] = getattr(limits, category)
+        found += [
+            Statement(category, state(limit, units), limit.wording, str(limit.source))
+            for limit in stated
+        ]
+        found += [
+            Statement(category, f"{CATEGORY_WORDS[category]}: none", none.wording, str(none.source))
+            for none in limits.stated_none
+            if none.category == category and not stated
+        ]
+    return tuple(found)
