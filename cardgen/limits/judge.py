@@ -9,7 +9,6 @@ satisfies neither. Margins are negative or zero where a limit is broken.
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final, TypeVar
 
 import numpy as np
@@ -17,10 +16,7 @@ import numpy as np
 from cardgen.limits.finding import BoolArray, FloatArray, Verdict, VerdictArray
 from cardgen.limits.flown import Span, Spans
 from cardgen.limits.kinds import (
-    AltitudeSchedule,
-    LeastManifoldPressure,
     Limit,
-    ManifoldPressureCurve,
     RestrictedRpm,
     RpmRange,
 )
@@ -37,30 +33,73 @@ Judged = tuple[VerdictArray, FloatArray]
 AnyLimit = TypeVar("AnyLimit", bound=Limit)
 
 
-def _verdict(broken: BoolArray, kept: BoolArray, *, broken_as: Verdict) -> VerdictArray:
-    """Return the verdict where a limit is broken, provably kept, or neither."""
+def verdict_where(broken: BoolArray, kept: BoolArray, *, broken_as: Verdict) -> VerdictArray:
+    """Return the verdict where a limit is broken, provably kept, or neither.
+
+    Parameters
+    ----------
+    broken, kept : ndarray of bool
+        Where some true value breaks it, where every true value keeps it [-]
+    broken_as : Verdict
+        What breaking it is [-]
+
+    Returns
+    -------
+    ndarray of int8
+        A `Verdict` for each setting, unknown where neither holds [-]
+    """
     verdict: VerdictArray = np.where(
         broken, broken_as, np.where(kept, Verdict.INSIDE, Verdict.UNKNOWN)
     ).astype(np.int8)
     return verdict
 
 
-def _at_most(
+def at_most(
     value: FloatArray, greatest: float | FloatArray, *, broken_as: Verdict = Verdict.OUTSIDE
 ) -> Judged:
-    """Return the verdict on values that may reach a limit but not pass it."""
+    """Return the verdict on values that may reach a limit but not pass it.
+
+    Parameters
+    ----------
+    value : ndarray
+        Greatest value each setting may have [SI]
+    greatest : float or ndarray
+        The limit [SI]
+    broken_as : Verdict
+        What a value above it is [-]
+
+    Returns
+    -------
+    tuple of ndarray
+        Verdict and room below the limit [-], [SI]
+    """
     margin: FloatArray = np.asarray(greatest - value)
     slack = SLACK * np.abs(greatest)
-    return _verdict(margin < -slack, margin >= -slack, broken_as=broken_as), margin
+    return verdict_where(margin < -slack, margin >= -slack, broken_as=broken_as), margin
 
 
-def _at_least(
+def at_least(
     value: FloatArray, least: float | FloatArray, *, broken_as: Verdict = Verdict.OUTSIDE
 ) -> Judged:
-    """Return the verdict on values that may fall to a limit but not below it."""
+    """Return the verdict on values that may fall to a limit but not below it.
+
+    Parameters
+    ----------
+    value : ndarray
+        Least value each setting may have [SI]
+    least : float or ndarray
+        The limit [SI]
+    broken_as : Verdict
+        What a value below it is [-]
+
+    Returns
+    -------
+    tuple of ndarray
+        Verdict and room above the limit [-], [SI]
+    """
     margin: FloatArray = np.asarray(value - least)
     slack = SLACK * np.abs(least)
-    return _verdict(margin < -slack, margin >= -slack, broken_as=broken_as), margin
+    return verdict_where(margin < -slack, margin >= -slack, broken_as=broken_as), margin
 
 
 def stricter(judged: Sequence[Judged]) -> Judged:
@@ -108,9 +147,9 @@ def judge_between(
     """
     judged: list[Judged] = []
     if least is not None:
-        judged.append(_at_least(span.low, least, broken_as=broken_as))
+        judged.append(at_least(span.low, least, broken_as=broken_as))
     if greatest is not None:
-        judged.append(_at_most(span.high, greatest, broken_as=broken_as))
+        judged.append(at_most(span.high, greatest, broken_as=broken_as))
     if not judged:  # a limit without a number allows nothing
         return constant(span.low.shape, Verdict.UNKNOWN)
     return stricter(judged)
@@ -204,149 +243,8 @@ def judge_restricted_rpm(limit: RestrictedRpm, spans: Spans) -> Judged:
     clear = margin > SLACK * high
     touched = margin <= SLACK * high
     broken_as = Verdict.OUTSIDE if bars_cruise(limit) else Verdict.CAUTION
-    verdict = _verdict(touched & may, clear | cannot, broken_as=broken_as)
+    verdict = verdict_where(touched & may, clear | cannot, broken_as=broken_as)
     return verdict, np.where(cannot, np.inf, margin)
-
-
-@dataclass(frozen=True, slots=True)
-class Charted:
-    """Least and greatest value of a curve over an interval, and how much of it is charted."""
-
-    least: FloatArray
-    greatest: FloatArray
-    wholly: BoolArray
-    not_wholly: BoolArray
-
-
-def curve_over(
-    x: Sequence[float], y: Sequence[float], *, low: FloatArray, high: FloatArray
-) -> Charted:
-    """Return the extremes of a broken line over intervals, taken where it is charted.
-
-    Parameters
-    ----------
-    x, y : sequence of float
-        Points, in any order; two at one `x` are a step and both count there [-]
-    low, high : ndarray
-        Ends of the intervals [unit of x]
-
-    Returns
-    -------
-    Charted
-        Extremes, NaN where no part of an interval is charted [unit of y]
-
-    Notes
-    -----
-    A broken line has its extremes over an interval at the interval's ends or at a point within.
-    """
-    order = np.argsort(np.asarray(x, dtype=np.float64), kind="stable")
-    xs = np.asarray(x, dtype=np.float64)[order]
-    ys = np.asarray(y, dtype=np.float64)[order]
-    first, last = xs[0] - SLACK * abs(xs[0]), xs[-1] + SLACK * abs(xs[-1])
-    charted = (high >= first) & (low <= last)
-    at_low = np.interp(np.clip(low, xs[0], xs[-1]), xs, ys)
-    at_high = np.interp(np.clip(high, xs[0], xs[-1]), xs, ys)
-    least, greatest = np.minimum(at_low, at_high), np.maximum(at_low, at_high)
-    for point, value in zip(xs, ys, strict=True):
-        near = SLACK * abs(point)
-        within = (low <= point + near) & (high >= point - near)
-        least = np.where(within, np.minimum(least, value), least)
-        greatest = np.where(within, np.maximum(greatest, value), greatest)
-    return Charted(
-        least=np.where(charted, least, np.nan),
-        greatest=np.where(charted, greatest, np.nan),
-        wholly=(low >= first) & (high <= last),
-        not_wholly=(low < first) | (high > last),
-    )
-
-
-def _under_curve(charted: Charted, pressure: Span) -> Judged:
-    """Judge pressures against a greatest-value curve; beyond its ends nothing is permitted."""
-    verdict, margin = _at_most(pressure.high, charted.least)
-    broken = (verdict == Verdict.OUTSIDE) | charted.not_wholly
-    kept = (verdict == Verdict.INSIDE) & charted.wholly
-    return (
-        _verdict(broken, kept, broken_as=Verdict.OUTSIDE),
-        np.where(charted.not_wholly, np.nan, margin),
-    )
-
-
-def judge_manifold_pressure_curve(limit: ManifoldPressureCurve, spans: Spans) -> Judged:
-    """Judge settings against a curve of greatest manifold pressure over rpm.
-
-    Parameters
-    ----------
-    limit : ManifoldPressureCurve
-        The curve; one point permits operation at its rpm only [-]
-    spans : Spans
-        True values each setting may have [-]
-
-    Returns
-    -------
-    tuple of ndarray
-        Verdict, outside beyond the curve's ends, and pressure below the curve, NaN there [-], [Pa]
-    """
-    charted = curve_over(limit.rpm, limit.manifold_pressure, low=spans.rpm.low, high=spans.rpm.high)
-    return _under_curve(charted, spans.manifold_pressure)
-
-
-def judge_altitude_schedule(
-    limit: AltitudeSchedule, spans: Spans, *, pressure_altitude: FloatArray
-) -> Judged:
-    """Judge settings against a schedule of greatest manifold pressure over altitude.
-
-    Parameters
-    ----------
-    limit : AltitudeSchedule
-        The schedule [-]
-    spans : Spans
-        True values each setting may have [-]
-    pressure_altitude : ndarray
-        Pressure altitude [m]
-
-    Returns
-    -------
-    tuple of ndarray
-        Verdict, outside beyond the schedule's ends, and pressure below it, NaN there [-], [Pa]
-    """
-    # The sea-level end is 0 m, where a relative slack is none: a millimetre stands in for it.
-    near = 1e-3
-    charted = curve_over(
-        limit.pressure_altitude,
-        limit.manifold_pressure,
-        low=pressure_altitude - near,
-        high=pressure_altitude + near,
-    )
-    first, last = min(limit.pressure_altitude), max(limit.pressure_altitude)
-    whole = (pressure_altitude >= first - near) & (pressure_altitude <= last + near)
-    beyond = (pressure_altitude < first - near) | (pressure_altitude > last + near)
-    within = Charted(charted.least, charted.greatest, whole, beyond)
-    return _under_curve(within, spans.manifold_pressure)
-
-
-def judge_least_manifold_pressure(limit: LeastManifoldPressure, spans: Spans) -> Judged:
-    """Judge settings against a curve of least manifold pressure over rpm.
-
-    Parameters
-    ----------
-    limit : LeastManifoldPressure
-        The curve; one point is a number that holds at every rpm, and a pressure of 0 says that
-        there is no limit at that rpm [-]
-    spans : Spans
-        True values each setting may have [-]
-
-    Returns
-    -------
-    tuple of ndarray
-        Verdict, unknown beyond the curve's ends, and pressure above the curve [-], [Pa]
-    """
-    low, high = spans.rpm.low, spans.rpm.high
-    if len(limit.rpm) == 1:
-        return _at_least(spans.manifold_pressure.low, limit.manifold_pressure[0])
-    charted = curve_over(limit.rpm, limit.manifold_pressure, low=low, high=high)
-    verdict, margin = _at_least(spans.manifold_pressure.low, charted.greatest)
-    kept = (verdict == Verdict.INSIDE) & charted.wholly
-    return _verdict(verdict == Verdict.OUTSIDE, kept, broken_as=Verdict.OUTSIDE), margin
 
 
 def judge_rpm_range(limit: RpmRange, spans: Spans) -> Judged:
@@ -401,7 +299,7 @@ def judge_leaning_power(greatest: float, power_fraction: Span) -> Judged:
     tuple of ndarray
         Verdict and room below the ceiling [-], [-]
     """
-    return _at_most(power_fraction.high, greatest)
+    return at_most(power_fraction.high, greatest)
 
 
 def judge_leaning_pressure(greatest: float, spans: Spans) -> Judged:
@@ -419,7 +317,7 @@ def judge_leaning_pressure(greatest: float, spans: Spans) -> Judged:
     tuple of ndarray
         Verdict and room below the ceiling [-], [Pa]
     """
-    return _at_most(spans.manifold_pressure.high, greatest)
+    return at_most(spans.manifold_pressure.high, greatest)
 
 
 def judge_full_throttle(spans: Spans, *, full_throttle: FloatArray) -> Judged:
@@ -443,8 +341,8 @@ def judge_full_throttle(spans: Spans, *, full_throttle: FloatArray) -> Judged:
     true value exceeds cannot be reached (outside); one the likely value exceeds may not be
     (caution).
     """
-    verdict, _ = _at_most(spans.manifold_pressure.low, full_throttle)
-    doubtful, margin = _at_most(
+    verdict, _ = at_most(spans.manifold_pressure.low, full_throttle)
+    doubtful, margin = at_most(
         spans.manifold_pressure.likely, full_throttle, broken_as=Verdict.CAUTION
     )
     return np.maximum(verdict, doubtful), margin

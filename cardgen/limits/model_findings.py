@@ -9,17 +9,11 @@ import numpy as np
 
 from cardgen.constants import INCH_OF_MERCURY
 from cardgen.limits.case import Case, Judge, beyond, modelled
+from cardgen.limits.charts import curve_over, judge_manifold_pressure_curve
 from cardgen.limits.finding import BoolArray, FloatArray, Index, Judgement, Verdict
 from cardgen.limits.flown import Bools, Bounds, Span
 from cardgen.limits.gauges import GaugeError, calibrated, indicated_rpm
-from cardgen.limits.judge import (
-    constant,
-    curve_over,
-    judge_between,
-    judge_full_throttle,
-    judge_manifold_pressure_curve,
-    stricter,
-)
+from cardgen.limits.judge import constant, judge_between, judge_full_throttle, stricter
 from cardgen.limits.wording import Measure, amount, below, spread
 
 

@@ -9,19 +9,15 @@ from typing import Final
 import numpy as np
 
 from cardgen.limits.case import Case, Judge, beyond, stated
-from cardgen.limits.finding import Index, Judgement
-from cardgen.limits.flown import Span
-from cardgen.limits.gauges import indicated_rpm_interval
-from cardgen.limits.judge import (
-    SLACK,
+from cardgen.limits.charts import (
     judge_altitude_schedule,
     judge_least_manifold_pressure,
     judge_manifold_pressure_curve,
-    judge_restricted_rpm,
-    judge_rpm_range,
-    same_limit,
-    stricter,
 )
+from cardgen.limits.finding import Index, Judgement
+from cardgen.limits.flown import Span
+from cardgen.limits.gauges import indicated_rpm_interval
+from cardgen.limits.judge import SLACK, judge_restricted_rpm, judge_rpm_range, same_limit, stricter
 from cardgen.limits.kinds import Category, RestrictedRpm
 from cardgen.limits.ratings import Ceiling, ceilings, judge_ratings, within
 from cardgen.limits.statement import duration, state_all
