@@ -7,17 +7,24 @@ if it has the value of its cell, stands under the rpm of its column and beside i
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from cardgen.errors import ReleaseError
 from cardgen.render.edition import Edition
+from cardgen.render.expectation import (
+    EXACT,
+    cell_name,
+    cells_of,
+    expected_cell,
+    is_number,
+    is_right,
+    is_same,
+    state_of,
+)
 from cardgen.render.fonts import printable
 from cardgen.render.wording import (
     DIGEST_DIGITS,
-    FULL_THROTTLE,
-    OUT_OF_REACH,
-    OUTSIDE_EVIDENCE,
     SUPPLEMENTARY,
     altitude_label,
     basis_text,
@@ -31,7 +38,6 @@ from cardgen.render.wording import (
     note_sections,
     page_text,
     percent,
-    reason_letter,
     shows_temperature,
     sign,
     temperature_label,
@@ -39,9 +45,8 @@ from cardgen.render.wording import (
     units_text,
 )
 from cardgen.render.words import Word, read_words
-from cardgen.tables.card import Card, CardTable, CellState
+from cardgen.tables.card import Card, CardTable
 
-EXACT = 1e-6  # cards hold numbers already rounded; more than this apart is another number
 _EDGE = 1.0  # slack when asking on which side of a column's edge a word starts [pt]
 
 
@@ -62,7 +67,7 @@ def read_back(pdf: bytes, edition: Edition) -> None:
     """
     card = edition.card
     pages = read_words(pdf)
-    unread = [set(_cells(table)) for table in card.tables]
+    unread = [set(cells_of(table)) for table in card.tables]
     spans: list[list[int]] = [[] for _ in card.tables]  # pages that carry each table
     for index, words in enumerate(pages):
         place = f"page {index + 1}"
@@ -71,13 +76,13 @@ def read_back(pdf: bytes, edition: Edition) -> None:
             spans[k].append(index + 1)
         tables = [card.tables[k] for k in sorted({k for k, _ in seen})] or list(card.tables)
         _check_marking(edition, words, tables, page=index + 1, pages=len(pages))
-        states = {_state(card.tables[k], at) for k, at in seen}
+        states = {state_of(card.tables[k], at) for k, at in seen}
         _check_present(
             words, place, [f"{mark} {meaning}" for mark, meaning in legend(card, states)]
         )
     for table, cells in zip(card.tables, unread, strict=True):
         if cells:
-            missing = _cell_name(card, table, min(cells))
+            missing = cell_name(card, table, min(cells))
             raise ReleaseError(f"read-back: {missing} is nowhere on the card as it should be")
     _check_continued(pages, spans)
     everything = [word for page in pages for word in page]
@@ -160,30 +165,6 @@ def _check_continued(pages: Sequence[Sequence[Word]], spans: Sequence[Sequence[i
 # ----------------------------------------------------------------------------------------- tables
 
 
-def _cells(table: CardTable) -> Iterator[tuple[int, int, int]]:
-    """Return the indices of a table's cells in reading order."""
-    return (
-        (a, t, r)
-        for a in range(len(table.altitude))
-        for t in range(len(table.isa_deviation))
-        for r in range(len(table.rpm))
-    )
-
-
-def _state(table: CardTable, at: tuple[int, int, int]) -> tuple[CellState, int]:
-    return CellState(int(table.state[at])), int(table.reason[at])
-
-
-def _cell_name(card: Card, table: CardTable, at: tuple[int, int, int]) -> str:
-    """Return what to call a cell in a message."""
-    altitude = f"{altitude_label(card)} {table.altitude[at[0]]:.0f}"
-    degrees = ""
-    if shows_temperature(card):
-        degrees = f", {deviation_name(card, table.isa_deviation[at[1]])}"
-    name = f"{percent(table.power_fraction)} {table.mixture}"
-    return f"{name}, {altitude}{degrees}, {table.rpm[at[2]]:.0f} rpm"
-
-
 @dataclass(frozen=True, slots=True)
 class _Column:
     temperature: int  # -1 where temperatures stand under each other
@@ -216,7 +197,7 @@ def _read_tables(
             first += 1
         reader = _Rows(card, table, columns, words, first, place)
         cells, start = _read_rows(reader, unread[index])
-        if start < len(words) and _is_number(words[start].text):
+        if start < len(words) and is_number(words[start].text):
             raise ReleaseError(
                 f"read-back: {place}, {percent(table.power_fraction)} {table.mixture}: the page"
                 f" says {words[start].text!r} where a row of the table should begin or end"
@@ -273,7 +254,7 @@ def _read_columns(
         order = [(-1, r) for r in rpm if r >= min(cell[2] for cell in unread)]
     columns: list[_Column] = []
     for k, word in enumerate(figures):
-        if k >= len(order) or not _same(word.text, table.rpm[order[k][1]]):
+        if k >= len(order) or not is_same(word.text, table.rpm[order[k][1]]):
             raise ReleaseError(f"read-back: a column is headed {word.text} rpm, which is not next")
         right = figures[k + 1].x if k + 1 < len(figures) else math.inf
         columns.append(_Column(*order[k], word.x, right))
@@ -283,19 +264,6 @@ def _read_columns(
     if not columns:
         raise ReleaseError("read-back: a table has no rpm columns")
     return columns, end
-
-
-def _is_number(text: str) -> bool:
-    return text.replace("\N{MINUS SIGN}", "").replace(".", "").isdigit()
-
-
-def _same(text: str, value: float) -> bool:
-    """Return whether a printed number has the value."""
-    try:
-        printed = float(text.replace("\N{MINUS SIGN}", "-"))
-    except ValueError:
-        return False
-    return abs(printed - value) <= EXACT
 
 
 @dataclass(slots=True)
@@ -311,13 +279,9 @@ class _Rows:
 
     def next_is(self, value: float, *, tolerance: float = EXACT) -> bool:
         """Return whether the next word is a number of about this value."""
-        if self.at >= len(self.words):
-            return False
-        try:
-            printed = float(self.words[self.at].text.replace("\N{MINUS SIGN}", "-"))
-        except ValueError:
-            return False
-        return abs(printed - value) <= tolerance
+        return self.at < len(self.words) and is_same(
+            self.words[self.at].text, value, tolerance=tolerance
+        )
 
     def take(self) -> Word:
         """Return the next word and step past it."""
@@ -370,7 +334,7 @@ def _read_row(rows: _Rows, row: list[tuple[int, int, int]], level: float) -> flo
     lowest = level
     group = -2
     for at, column in zip(row, rows.columns, strict=True):
-        name = _cell_name(rows.card, rows.table, at)
+        name = cell_name(rows.card, rows.table, at)
         if across and column.temperature != group:
             group = column.temperature
             value = float(rows.table.outside_air_temperature[at[0], at[1]])
@@ -378,14 +342,9 @@ def _read_row(rows: _Rows, row: list[tuple[int, int, int]], level: float) -> flo
                 found = rows.take().text
                 raise ReleaseError(f"read-back: {name}: OAT printed {found}, computed {value:g}")
             rows.take()
-        for what, expected in _expected(rows.card, rows.table, at):
+        for what, expected in expected_cell(rows.card, rows.table, at):
             word = rows.take()
-            right = (
-                _same(word.text, expected)
-                if isinstance(expected, float)
-                else (word.text == expected)
-            )
-            if not right:
+            if not is_right(word.text, expected):
                 raise ReleaseError(
                     f"read-back: {rows.place}, {name}: {what} printed {word.text!r},"
                     f" computed {expected!r}"
@@ -400,25 +359,3 @@ def _read_row(rows: _Rows, row: list[tuple[int, int, int]], level: float) -> flo
                 )
             lowest = min(lowest, word.y)
     return lowest
-
-
-def _expected(
-    card: Card, table: CardTable, at: tuple[int, int, int]
-) -> list[tuple[str, float | str]]:
-    """Return what a cell must carry, as numbers where they are numbers."""
-    state, _ = _state(table, at)
-    if state is CellState.FORBIDDEN:
-        return [("letter", reason_letter(card, table, at))]
-    if state is CellState.OUT_OF_REACH:
-        return [("mark", OUT_OF_REACH)]
-    if state is CellState.OUTSIDE_EVIDENCE:
-        return [("mark", OUTSIDE_EVIDENCE)]
-    expected: list[tuple[str, float | str]] = [
-        ("manifold pressure", float(table.manifold_pressure[at])),
-        ("fuel flow", float(table.fuel_flow[at])),
-        ("true airspeed", float(table.true_airspeed[at])),
-    ]
-    if state is CellState.FULL_THROTTLE:
-        power = math.floor(float(table.percent_power[at]) + 1e-9)
-        expected.append(("full-throttle mark", f"{FULL_THROTTLE} {power}%"))
-    return expected

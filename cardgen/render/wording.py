@@ -133,7 +133,7 @@ def reason_letter(card: Card, table: CardTable, at: tuple[int, int, int]) -> str
 
 def full_throttle_mark(percent_power: float) -> str:
     """Return the mark of a full-throttle cell with the power it gives, rounded down [%]."""
-    return f"{FULL_THROTTLE} {number(math.floor(percent_power + 1e-9))}%"
+    return f"{FULL_THROTTLE} {number(math.floor(percent_power + 1e-6))}%"
 
 
 def percent(power_fraction: float) -> str:
@@ -215,8 +215,23 @@ def units_text(card: Card) -> str:
     return "Units: " + ", ".join(parts)
 
 
-def tolerance_text(card: Card, tables: Iterable[CardTable]) -> str:
-    """Return the largest 95 % tolerance of the tables, rounded up."""
+def tolerance_text(card: Card, tables: Iterable[CardTable], *, where: str = "on this page") -> str:
+    """Return the largest 95 % tolerance of the tables, rounded up.
+
+    Parameters
+    ----------
+    card : Card
+        The card [-]
+    tables : iterable of CardTable
+        The tables it is the largest of [-]
+    where : str
+        What to call the place they stand in [-]
+
+    Returns
+    -------
+    str
+        The line printed [-]
+    """
     stated = [table.tolerance for table in tables]
     known = [tolerance for tolerance in stated if tolerance is not None]
     if not known or len(known) < len(stated):
@@ -232,7 +247,7 @@ def tolerance_text(card: Card, tables: Iterable[CardTable]) -> str:
             strict=True,
         )
     ]
-    return f"Tolerance (95 %, largest on this page): {', '.join(pieces)}"
+    return f"Tolerance (95 %, largest {where}): {', '.join(pieces)}"
 
 
 def _up(value: float, decimals: int) -> float:
