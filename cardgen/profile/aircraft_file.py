@@ -17,6 +17,7 @@ from cardgen.profile.values import (
     Choice,
     Date,
     Flag,
+    Format,
     FuelVolume,
     LeanOffset,
     Mass,
@@ -180,9 +181,7 @@ class AircraftFile(Section):
     kind: Annotated[str, Choice(("aircraft",))] = Field(
         description="What the file describes: aircraft"
     )
-    format: Annotated[int, Number(1, 1, whole=True)] = Field(
-        description="Version of the file format: 1"
-    )
+    format: Format = Field(description="Version of the file format")
     demo: Flag = Field(
         False, description="yes for invented data: the card says it is not for flight"
     )

@@ -10,16 +10,14 @@ from cardgen.engine import Engine
 from cardgen.engine.model import DEFAULT_FUEL_DENSITY
 from cardgen.profile.limit_sections import LimitsSection, RatingSection
 from cardgen.profile.section import Section
-from cardgen.profile.values import Choice, Induction, Name, Number, Quantity, Words
+from cardgen.profile.values import Choice, Format, Induction, Name, Number, Quantity, Words
 
 
 class EngineFile(Section):
     """An engine file, `engines/NAME.yaml`."""
 
     kind: Annotated[str, Choice(("engine",))] = Field(description="What the file describes: engine")
-    format: Annotated[int, Number(1, 1, whole=True)] = Field(
-        description="Version of the file format: 1"
-    )
+    format: Format = Field(description="Version of the file format")
     model: Words = Field(description="Maker's designation, printed on the card")
     displacement: Annotated[float, Quantity("volume", "50 in3", "2000 in3")] = Field(
         description="Swept volume of all cylinders"

@@ -34,14 +34,14 @@ class TachometerPointSection(Section):
     """What the tachometer read at one true rpm."""
 
     indicated: Rpm = Field(description="Reading, increasing from point to point")
-    true: Rpm = Field(description="True rpm at that reading, increasing too")
+    actual: Rpm = Field(description="True rpm at that reading, increasing too")
 
 
 class PressurePointSection(Section):
     """What the manifold-pressure gauge read at one true pressure."""
 
     indicated: ManifoldPressure = Field(description="Reading, increasing from point to point")
-    true: ManifoldPressure = Field(description="True pressure at that reading, increasing too")
+    actual: ManifoldPressure = Field(description="True pressure at that reading, increasing too")
 
 
 class CalibrationSection(Section):
@@ -103,14 +103,14 @@ _Points = list[TachometerPointSection] | list[PressurePointSection]
 def _require_readable(points: _Points) -> None:
     """Refuse a calibration that cannot be read both ways."""
     require_increasing([p.indicated for p in points], at=("points",), leaf="indicated")
-    require_increasing([p.true for p in points], at=("points",), leaf="true")
+    require_increasing([p.actual for p in points], at=("points",), leaf="actual")
 
 
 def _gauge(
     section: CalibrationSection, correction: float | None, points: _Points, band: float
 ) -> GaugeError:
     """Return a calibration as the limits know it."""
-    pairs = [(point.indicated, point.true - point.indicated) for point in points]
+    pairs = [(point.indicated, point.actual - point.indicated) for point in points]
     if correction is not None:
         pairs = [(0.0, correction)]
     indicated, corrections = zip(*pairs, strict=True)
@@ -124,7 +124,7 @@ class PositionPointSection(Section):
     calibrated: Airspeed = Field(description="Calibrated airspeed there, increasing too")
 
 
-_NotMeasured = Annotated[str, Choice(("not measured",)), Tag("<text>")]
+_NotMeasured = Annotated[str, Choice(("not measured",), "or its calibration"), Tag("<text>")]
 _SHAPES = by_shape(
     text="the words not measured", mapping="a mapping with correction or points, band, date, method"
 )

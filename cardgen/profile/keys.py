@@ -65,7 +65,20 @@ def sections_in(annotation: Any, *, tag: str | None = None) -> Iterator[type[Sec
 
 
 def section_at(file: type[Section], path: Sequence[str | int]) -> type[Section] | None:
-    """Return the section that a validator's path leads to, shapes in angle brackets included."""
+    """Return the section that a validator's path leads to.
+
+    Parameters
+    ----------
+    file : type
+        Class of the file [-]
+    path : sequence of str or int
+        Keys, places in lists, and shapes in angle brackets [-]
+
+    Returns
+    -------
+    type or None
+        Class of the section, None where the path leads to none [-]
+    """
     section: type[Section] | None = file
     annotation: Any = file
     for step in path:
@@ -138,13 +151,24 @@ def _keys_of(section: type[Section], prefix: str, *, seen: set[_Definition]) -> 
         if (definition := _defined_in(section, name)) in seen:
             continue
         seen.add(definition)
-        yield Key(path, _words(info), info.is_required(), info.description or "")
+        yield Key(path, value_words(info), info.is_required(), info.description or "")
         for in_list, inner in _shapes_in(info.annotation):
             yield from _keys_of(inner, f"{prefix}{name}" + ("[]." if in_list else "."), seen=seen)
 
 
-def _words(info: FieldInfo) -> str:
-    """Return what may be written for a key."""
+def value_words(info: FieldInfo) -> str:
+    """Return what may be written for a key.
+
+    Parameters
+    ----------
+    info : FieldInfo
+        The key [-]
+
+    Returns
+    -------
+    str
+        Its value in words [-]
+    """
     words = _value_in(info.annotation, info.metadata)
     shapes = ["list" if in_list else "mapping" for in_list, _ in _shapes_in(info.annotation)]
     if shapes:

@@ -11,7 +11,7 @@ from typing import Any, Generic, TypeVar
 from pydantic import ValidationError
 
 from cardgen.errors import Problem
-from cardgen.profile.keys import FILES, Kind, section_at
+from cardgen.profile.keys import FILES, Kind, section_at, value_words
 from cardgen.profile.reading import Node, dotted, read_document
 from cardgen.profile.section import Section
 from cardgen.profile.values import shown as shown_value
@@ -119,9 +119,7 @@ def _report_all(file: ProfileFile[FileT], model: type[FileT], error: ValidationE
             case "extra_forbidden":
                 _report_unknown_key(file, path, section_at(model, raw[:-1]))
             case "missing":
-                section = section_at(model, raw[:-1])
-                info = section.model_fields.get(str(raw[-1])) if section else None
-                file.report(path, "is missing", (info and info.description) or "")
+                _report_missing_key(file, path, section_at(model, raw[:-1]))
             case "too_long" | "too_short":
                 bound = (
                     f"at most {context['max_length']}"
@@ -146,6 +144,15 @@ def _report_all(file: ProfileFile[FileT], model: type[FileT], error: ValidationE
             case _:
                 file.report(path, fault["msg"])
     return broken
+
+
+def _report_missing_key(
+    file: ProfileFile[FileT], path: tuple[str | int, ...], section: type[Section] | None
+) -> None:
+    """Report a required key that is not there, with what it is for."""
+    info = section.model_fields.get(str(path[-1])) if section else None
+    meaning = f" ({info.description})" if info else ""
+    file.report(path, f"is missing{meaning}", value_words(info) if info else "")
 
 
 def _stands_here(value: object) -> str:

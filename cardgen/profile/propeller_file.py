@@ -10,7 +10,7 @@ from pydantic import Field, model_validator
 from cardgen.curves import MonotoneCurve
 from cardgen.profile.limit_sections import LimitsSection
 from cardgen.profile.section import Section, require_increasing, require_one, require_order
-from cardgen.profile.values import Choice, Number, Quantity, Words, wrong
+from cardgen.profile.values import Choice, Format, Number, Quantity, Words, wrong
 from cardgen.propeller import (
     REFERENCE_STATION,
     Blade,
@@ -114,9 +114,7 @@ class PropellerFile(Section):
     kind: Annotated[str, Choice(("propeller",))] = Field(
         description="What the file describes: propeller"
     )
-    format: Annotated[int, Number(1, 1, whole=True)] = Field(
-        description="Version of the file format: 1"
-    )
+    format: Format = Field(description="Version of the file format")
     model: Words = Field(description="Maker's designation, printed on the card")
     blades: Annotated[int, Number(2, 6, whole=True)] = Field(description="Number of blades")
     diameter: Annotated[float, Quantity("length", "50 in", "120 in")] = Field(

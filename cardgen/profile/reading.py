@@ -87,7 +87,18 @@ class Node:
 
 
 def dotted(path: Sequence[str | int]) -> str:
-    """Return a path as problems show it, list items counted from 1: `ratings[2].power`."""
+    """Return a path as problems show it: `ratings[2].power`.
+
+    Parameters
+    ----------
+    path : sequence of str or int
+        Keys and places in lists, counted from 0 [-]
+
+    Returns
+    -------
+    str
+        The path, places counted from 1 [-]
+    """
     text = ""
     for step in path:
         text += f"[{step + 1}]" if isinstance(step, int) else f".{step}" if text else step

@@ -44,7 +44,7 @@ def by_shape(**words: str) -> Discriminator:
     Returns
     -------
     Discriminator
-        Chooses the tag `<text>`, `<list>` or `<mapping>`; angle brackets keep the tag out of keys
+        Chooses the tag `<text>`, `<list>` or `<mapping>`, which no key can be mistaken for [-]
     """
     shapes = {"text": str, "list": list, "mapping": dict}
 
@@ -67,11 +67,14 @@ def require_one(section: Section, keys: Sequence[str]) -> None:
         The keys that exclude each other [-]
     """
     stated = [key for key in keys if getattr(section, key) is not None]
-    expected = "exactly one of " + ", ".join(keys)
     if not stated:
-        raise wrong("none of the keys that say it is given", expected)
+        raise wrong(f"none of {', '.join(keys)} is given", "exactly one of them")
     if len(stated) > 1:
-        raise wrong(f"{' and '.join(stated)} exclude each other", expected, at=(stated[1],))
+        raise wrong(
+            f"{' and '.join(stated)} exclude each other",
+            "exactly one of " + ", ".join(keys),
+            at=(stated[1],),
+        )
 
 
 def require_increasing(values: Sequence[float], *, at: Sequence[str | int], leaf: str) -> None:

@@ -103,8 +103,8 @@ limits:
 instruments:
   tachometer:
     points:
-      - {{indicated: 2000 rpm, true: 2010 rpm}}
-      - {{indicated: 2600 rpm, true: 2615 rpm}}
+      - {{indicated: 2000 rpm, actual: 2010 rpm}}
+      - {{indicated: 2600 rpm, actual: 2615 rpm}}
     band: 10 rpm
     date: 2026-01-15
     method: Optical tachometer

@@ -45,7 +45,18 @@ def wrong(found: str, expected: str = "", *, at: tuple[str | int, ...] = ()) -> 
 
 
 def shown(value: object) -> str:
-    """Return a value as an error repeats it."""
+    """Return a value as an error repeats it.
+
+    Parameters
+    ----------
+    value : object
+        Text, list or mapping [-]
+
+    Returns
+    -------
+    str
+        The text, cut short, or the name of its shape [-]
+    """
     if isinstance(value, dict):
         return "a mapping of keys"
     if isinstance(value, list):
@@ -57,12 +68,25 @@ def shown(value: object) -> str:
 
 
 def scalar_text(value: object, expected: str) -> str:
-    """Return the text of a scalar that is neither empty nor overlong."""
+    """Return the text of a scalar that is not empty.
+
+    Parameters
+    ----------
+    value : object
+        What stands in the file [-]
+    expected : str
+        What is expected there, for the error [-]
+
+    Returns
+    -------
+    str
+        The text without blanks around it [-]
+    """
     if not isinstance(value, str):
         raise wrong(f"{shown(value)} stands here", expected)
     text = value.strip()
     if not text:
-        raise wrong("has no value", f"{expected}; leave the key out where there is none")
+        raise wrong("has no value", expected)
     return text
 
 
@@ -206,11 +230,13 @@ class Choice(Value):
     """One of a few words."""
 
     among: tuple[str, ...]
+    otherwise: str = ""
 
     @property
     def words(self) -> str:
         """Return what may be written."""
-        return ("one of " if len(self.among) > 1 else "") + ", ".join(self.among)
+        words = ("one of " if len(self.among) > 1 else "") + ", ".join(self.among)
+        return f"{words}, {self.otherwise}" if self.otherwise else words
 
     def read(self, value: object) -> str:
         """Return the word."""
@@ -222,6 +248,17 @@ class Choice(Value):
     def json_schema(self) -> JsonSchemaValue:
         """Return the JSON Schema."""
         return {"enum": list(self.among)}
+
+
+@dataclass(frozen=True)
+class FormatVersion(Choice):
+    """Version of the file format."""
+
+    among: tuple[str, ...] = ("1",)
+
+    def json_schema(self) -> JsonSchemaValue:
+        """Return the JSON Schema; unquoted, a version is a number to an editor."""
+        return {"enum": [1, "1"]}
 
 
 @dataclass(frozen=True)
@@ -310,4 +347,5 @@ Name = Annotated[str, Text(40)]
 Words = Annotated[str, Text(120)]
 Wording = Annotated[str, Text(400)]
 Date = Annotated[str, IsoDate()]
+Format = Annotated[str, FormatVersion()]
 Flag = Annotated[bool, YesNo()]
