@@ -299,10 +299,11 @@ class SplineGrid:
         for value, low, high, cells in zip(at, self.lower, self.upper, self.size, strict=True):
             place = (value - low) * (cells / (high - low))
             slack = cells * 1e-12
-            outside |= ~((place >= -slack) & (place <= cells + slack))
-            np.fmin(place, cells - 1, out=place)  # fmin and fmax drop NaN
-            cell = np.fmax(place, 0.0).astype(np.intp)
-            np.subtract((value - low) * (cells / (high - low)), cell, out=place)
+            beyond = ~((place >= -slack) & (place <= cells + slack))
+            outside |= beyond
+            np.copyto(place, 0.0, where=beyond)
+            cell = np.minimum(place.astype(np.intp), cells - 1)
+            place -= cell
             base *= cells + 3
             base += cell
             weights.append(spline_weights(place))

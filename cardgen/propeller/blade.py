@@ -157,7 +157,7 @@ class Propeller:
     blade_count : int
         Number of blades [-]
     blade : Blade
-        Form of the blades.
+        Form of the blades [-]
     fine_stop, coarse_stop : float
         Least and greatest blade angle the hub allows, at 0.75 R [rad]
     installation_factor : float
@@ -166,7 +166,7 @@ class Propeller:
         Station at which the propeller's data sheet quotes its blade angles [r/R]
     body : Body, optional
         Body behind the propeller, where the blades' inflow is known to be slowed by it. Leave it
-        out where `installation_factor` stands for the body.
+        out where `installation_factor` stands for the body [-]
     """
 
     diameter: float
@@ -185,7 +185,7 @@ def activity_factor(blade: Blade) -> float:
     Parameters
     ----------
     blade : Blade
-        Form of the blade.
+        Form of the blade [-]
 
     Returns
     -------
@@ -210,14 +210,15 @@ def blade_5868_9() -> Blade:
     Returns
     -------
     Blade
-        Form as tested.
+        Form as tested [-]
 
     References
     ----------
     E. P. Hartman, D. Biermann, "The aerodynamic characteristics of full-scale propellers having
-    2, 3, and 4 blades of Clark Y and R.A.F. 6 airfoil sections", NACA TR 640 (1938); the same,
-    "The torsional and ...", and "Tests of two full-scale propellers with different pitch
-    distributions, at blade angles up to 60 degrees", NACA TR 658 (1939), figure 2.
+    2, 3, and 4 blades of Clark Y and R.A.F. 6 airfoil sections", NACA TR 640 (1938).
+    D. Biermann, E. P. Hartman, "Tests of two full-scale propellers with different pitch
+    distributions, at blade angles up to 60 degrees", NACA TR 658 (1939). The numbers were read in
+    an open transcription of TR 658, whose author added the rounded tip and the row at 0.25 R.
     """
     x, chord, thickness, twist = zip(*_FORM_5868_9, strict=True)
     return Blade(x, chord, thickness, tuple(float(a) for a in np.radians(twist)))
@@ -236,7 +237,7 @@ def blade_from_activity_factor(wanted: float, *, thickness_scale: float = 1.0) -
     Returns
     -------
     Blade
-        Form with twist as published and chord scaled.
+        Form with twist as published and chord scaled [-]
     """
     form = blade_5868_9()
     scale = wanted / activity_factor(form)
@@ -254,7 +255,7 @@ def blade_angle_at_reference(blade: Blade, angle: ArrayLike, *, station: ArrayLi
     Parameters
     ----------
     blade : Blade
-        Form of the blade.
+        Form of the blade [-]
     angle : array_like
         Blade angle at `station` [rad]
     station : array_like
@@ -274,7 +275,7 @@ def blade_angle_at_station(blade: Blade, angle: ArrayLike, *, station: ArrayLike
     Parameters
     ----------
     blade : Blade
-        Form of the blade.
+        Form of the blade [-]
     angle : array_like
         Blade angle at 0.75 R [rad]
     station : array_like

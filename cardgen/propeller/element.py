@@ -79,7 +79,7 @@ def inflow_factor(body: Body | None, station: ArrayLike) -> FloatArray:
     Parameters
     ----------
     body : Body or None
-        Body behind the propeller.
+        Body behind the propeller [-]
     station : array_like
         Radius over tip radius [-]
 
@@ -112,9 +112,9 @@ def coefficients(
     Parameters
     ----------
     propeller : Propeller
-        The propeller; its diameter and stops play no part.
+        The propeller; its diameter and stops play no part [-]
     advance_ratio : array_like
-        J = V / (n D), positive [-]
+        J = V / (n D), not negative [-]
     blade_angle : array_like
         Blade angle at 0.75 R [rad]
     tip_mach : array_like
@@ -123,7 +123,7 @@ def coefficients(
     Returns
     -------
     Coefficients
-        Of the broadcast shape; NaN where the equations have no root, as on a windmilling blade.
+        Of the broadcast shape; NaN where the equations have no root [-]
 
     Notes
     -----
@@ -133,14 +133,16 @@ def coefficients(
         4 F sin(phi) (sin(phi) - l cos(phi)) - s (c_n + l c_t) = 0,
 
     Ning's residual multiplied by its denominators, which leaves it without singularity. The
-    angle without induced flow and the angle without lift always enclose the root.
+    angle without induced flow and the angle without lift always enclose the root. F is that of
+    helical wakes (`loss_factor`); Prandtl's would do in its place. A blade that lifts backwards is
+    solved too, as far as momentum theory goes: not where it slows the air by some 40 percent,
+    which happens only far beyond zero thrust, outside the table.
 
     References
     ----------
     S. A. Ning, "A simple solution method for the blade element momentum equations with guaranteed
     convergence", Wind Energy 17 (2014), pp. 1327-1345.
-    H. Glauert, "Airplane propellers", in W. F. Durand (ed.), Aerodynamic Theory IV (1935): loss
-    factor of Prandtl.
+    H. Glauert, "Airplane propellers", in W. F. Durand (ed.), Aerodynamic Theory IV (1935).
     """
     j, beta, mach = np.broadcast_arrays(
         np.asarray(advance_ratio, dtype=np.float64),
@@ -148,7 +150,8 @@ def coefficients(
         np.asarray(tip_mach, dtype=np.float64),
     )
     shape = j.shape
-    j, beta, mach = j.reshape(-1), beta.reshape(-1), mach.reshape(-1)
+    j = np.where(j >= 0.0, j, np.nan).reshape(-1)
+    beta, mach = beta.reshape(-1), mach.reshape(-1)
     out = np.empty((3, j.size))
     for start in range(0, j.size, _CHUNK):
         part = slice(start, start + _CHUNK)
@@ -194,7 +197,7 @@ def _solve(propeller: Propeller, j: FloatArray, beta: FloatArray, mach: FloatArr
     thrust = 0.25 * blades * np.sum(load * normal, axis=0)
     power = 0.25 * np.pi * blades * np.sum(load * tangential * x, axis=0)
     thrust = _less_slipstream_drag(propeller.body, thrust)
-    incidence = beta - _interpolate(x[:, 0], phi)
+    incidence = beta - _inflow_at_reference(x[:, 0], phi)
     return np.stack((power, thrust, incidence))
 
 
@@ -205,9 +208,10 @@ def _less_slipstream_drag(body: Body | None, thrust: FloatArray) -> FloatArray:
     return thrust * (1.0 - body.drag_coefficient * body.radius_fraction**2)
 
 
-def _interpolate(x: FloatArray, phi: FloatArray) -> FloatArray:
-    """Inflow angle at 0.75 R, linear between the stations around it."""
+def _inflow_at_reference(x: FloatArray, phi: FloatArray) -> FloatArray:
+    """Inflow angle at 0.75 R, from the stations around it; x tan(phi) hardly varies there."""
     k = int(np.searchsorted(x, REFERENCE_STATION))
     share = (REFERENCE_STATION - x[k - 1]) / (x[k] - x[k - 1])
-    at: FloatArray = (1.0 - share) * phi[k - 1] + share * phi[k]
-    return at
+    pitch = (1.0 - share) * x[k - 1] * np.tan(phi[k - 1]) + share * x[k] * np.tan(phi[k])
+    inflow: FloatArray = np.arctan(pitch / REFERENCE_STATION)
+    return inflow

@@ -39,7 +39,7 @@ def governing(propeller: Propeller, blade_angle: ArrayLike) -> NDArray[np.int8]:
     Parameters
     ----------
     propeller : Propeller
-        The propeller.
+        The propeller [-]
     blade_angle : array_like
         Blade angle at 0.75 R that absorbs the power at the rpm asked [rad]
 
@@ -68,10 +68,10 @@ def ungoverned_rpm(
     Parameters
     ----------
     propeller : Propeller
-        The propeller.
+        The propeller [-]
     power : callable
-        Shaft power [W] at given propeller rpm, working on arrays of the broadcast shape of the
-        other arguments.
+        Shaft power at given propeller rpm, called with arrays of the broadcast shape of the other
+        arguments [W]
     blade_angle : array_like
         Blade angle at 0.75 R, usually that of a stop [rad]
     true_airspeed : array_like

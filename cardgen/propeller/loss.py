@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from functools import lru_cache
 
 import numpy as np
-from numpy.typing import NDArray
+from numpy.typing import ArrayLike, NDArray
 
 FloatArray = NDArray[np.float64]
 
@@ -73,7 +73,7 @@ def loss_factor(blade_count: int, hub: float, *, stations: tuple[float, ...]) ->
     Returns
     -------
     LossFactor
-        Factor at the stations.
+        Factor at the stations [-]
 
     Notes
     -----
@@ -110,7 +110,7 @@ def _factor_along_blade(blade_count: int, hub: float, pitch: float, at: FloatArr
     edge = hub + span * (1.0 - np.cos(angle))
     inside = 0.5 * (angle[1:] + angle[:-1])
     x = hub + span * (1.0 - np.cos(inside))
-    axial, swirl = _vortex_speeds(blade_count, x, edge, pitch)
+    axial, swirl = vortex_speeds(blade_count, x, vortex=edge, pitch=pitch)
     hypotenuse = np.hypot(x, pitch)
     cosine, sine = x / hypotenuse, pitch / hypotenuse
     normal = axial * cosine[:, None] + swirl * sine[:, None]
@@ -124,10 +124,27 @@ def _factor_along_blade(blade_count: int, hub: float, pitch: float, at: FloatArr
     return np.interp(wanted, inside, factor / envelope) * np.sin(wanted)
 
 
-def _vortex_speeds(
-    blade_count: int, x: FloatArray, vortex: FloatArray, pitch: float
+def vortex_speeds(
+    blade_count: int, x: FloatArray, *, vortex: FloatArray, pitch: ArrayLike
 ) -> tuple[FloatArray, FloatArray]:
-    """Axial and swirl speed at a blade, at x, from unit helical vortices that trail at `vortex`.
+    """Speeds at a blade from helical vortices that all blades trail, of unit circulation.
+
+    Parameters
+    ----------
+    blade_count : int
+        Number of blades [-]
+    x : ndarray
+        Where the speeds are wanted, radius over tip radius; none at a vortex [-]
+    vortex : ndarray
+        Where the vortices leave the blades, radius over tip radius [-]
+    pitch : array_like
+        Radius times the tangent of the helix angle of each vortex, over tip radius [-]
+
+    Returns
+    -------
+    axial, swirl : ndarray
+        Speeds times tip radius over circulation, a row for each `x`, a column for each `vortex`;
+        of a vortex that ends the blade's circulation, as at the tip, the negative [-]
 
     Notes
     -----
@@ -137,8 +154,8 @@ def _vortex_speeds(
     57 (2013), appendix.
     """
     z = float(blade_count)
-    y = x[:, None] / pitch
-    y0 = vortex[None, :] / pitch
+    pitch = np.asarray(pitch, dtype=np.float64)
+    y, y0 = np.broadcast_arrays(x[:, None] / pitch, vortex[None, :] / pitch)
     s, s0 = np.sqrt(1.0 + y * y), np.sqrt(1.0 + y0 * y0)
     exponent = z * (np.log(y0 * (s - 1.0) / (y * (s0 - 1.0))) + s - s0)
     inner = x[:, None] < vortex[None, :]

@@ -17,7 +17,7 @@ CLARK_Y_THICKNESS = 0.117
 #: Thickness over chord at which half the camber's effect is lost: the thick sections near the
 #: hub separate on their rounded backs and pass into the round shank.
 CAMBER_LIMIT = 0.27
-#: Thickness over chord at which a section makes half the lift of a thin one, and beyond which its
+#: Thickness over chord at which a section makes half the lift of a thin one, and about which its
 #: drag turns into that of a round shank.
 BLUNT_THICKNESS = 0.48
 #: Drag coefficient of a round shank above its critical Reynolds number.
@@ -44,17 +44,17 @@ GLAUERT_LIMIT = 0.78
 
 #: Angle of zero lift of the Clark Y from its flat lower surface, from which blade angles are
 #: measured [rad]; two-dimensional tests -5.0 to -5.8 degrees.
-CLARK_Y_ZERO_LIFT_ANGLE = float(np.radians(-4.65))
+CLARK_Y_ZERO_LIFT_ANGLE = float(np.radians(-4.62))
 #: Slope of the lift line over the thin-aerofoil value 2 pi; two-dimensional tests 0.90 to 1.0.
-LIFT_SLOPE_SHARE = 0.927
+LIFT_SLOPE_SHARE = 0.929
 #: Least drag coefficient of the Clark Y; two-dimensional tests 0.006 to 0.009.
-MINIMUM_DRAG = 0.0055
+MINIMUM_DRAG = 0.0082
 #: Incidence from zero lift about which the sections stall [rad], and how suddenly [1/rad];
 #: two-dimensional tests of thin sections 14 to 17 degrees.
 STALL_INCIDENCE = float(np.radians(14.0))
-STALL_SHARPNESS = 27.0
+STALL_SHARPNESS = 24.0
 #: Drag of the stalled section over the squared sine of its incidence; 2 would be a flat plate.
-STALLED_DRAG = 2.47
+STALLED_DRAG = 2.49
 
 
 @dataclass(frozen=True, slots=True)
@@ -102,7 +102,7 @@ def clark_y(
     Returns
     -------
     Section
-        Sections ready for `lift_drag`.
+        Sections ready for `lift_drag` [-]
 
     Notes
     -----
@@ -124,7 +124,7 @@ def clark_y(
     compression = np.sqrt(1.0 - effective**2)
     camber = t / (1.0 + (t / CAMBER_LIMIT) ** 2) / CLARK_Y_THICKNESS
     own = 1.0 + (CLARK_Y_THICKNESS / CAMBER_LIMIT) ** 2  # so that the Clark Y itself keeps its own
-    round_share = bluntness / (1.0 + bluntness)
+    round_share = np.square(bluntness / (1.0 + bluntness))
     streamlined = MINIMUM_DRAG * _form_factor(t) / _form_factor(np.asarray(CLARK_Y_THICKNESS))
     turning = np.square(np.asarray(chord_to_radius, dtype=np.float64))
     critical = KORN_FACTOR + TIP_RELIEF - t - (0.1 / 80.0) ** (1.0 / 3.0)
@@ -144,7 +144,7 @@ def lift_drag(section: Section, angle_of_attack: FloatArray) -> tuple[FloatArray
     Parameters
     ----------
     section : Section
-        Sections, from `clark_y`.
+        Sections, from `clark_y` [-]
     angle_of_attack : ndarray
         Angle between the flow and the flat lower surface [rad]
 
@@ -169,11 +169,9 @@ def lift_drag(section: Section, angle_of_attack: FloatArray) -> tuple[FloatArray
     square -= square * square * (1.0 / 3.0)
     drag = section.minimum_drag + STALLED_DRAG * stalled * square
     drag += DRAG_RISE_WITH_LIFT * np.square(lift - LIFT_OF_LEAST_DRAG)
-    shock = section.critical_mach_excess + 0.1 * np.abs(lift)
-    np.maximum(shock, 0.0, out=shock)
+    shock = np.maximum(section.critical_mach_excess + 0.1 * np.abs(lift), 0.0)
     shock *= shock
-    shock *= shock
-    drag += 20.0 * shock
+    drag += 20.0 * shock * shock
     return lift, drag
 
 

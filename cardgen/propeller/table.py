@@ -76,7 +76,7 @@ class CoefficientTable:
         Returns
         -------
         Coefficients
-            NaN outside the table.
+            NaN outside the table [-]
         """
         j = np.asarray(advance_ratio, dtype=np.float64)
         above = np.asarray(blade_angle, dtype=np.float64) - _datum_angle(j)
@@ -164,7 +164,7 @@ def table_advance_ratios(
     Parameters
     ----------
     table : CoefficientTable
-        The table.
+        The table [-]
     blade_angle : array_like
         Blade angle at 0.75 R [rad]
 
@@ -191,13 +191,14 @@ def coefficient_table(propeller: Propeller) -> CoefficientTable:
     Parameters
     ----------
     propeller : Propeller
-        The propeller; its diameter, fine stop and installation factor play no part.
+        The propeller; its diameter, fine stop and installation factor play no part [-]
 
     Returns
     -------
     CoefficientTable
         Covers advance ratios from 0.2 to where the blade windmills at its coarse stop, tip Mach
-        numbers from 0.40 to 0.95, and blade angles from about zero thrust to beyond the stall.
+        numbers from 0.40 to 0.95, and blade angles from about zero thrust to beyond the stall
+        [-]
 
     Raises
     ------
