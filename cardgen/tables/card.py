@@ -43,7 +43,9 @@ class CardTable:
     power_fraction: float
     mass: float  # [kg]
     altitude: tuple[float, ...]  # in the card's unit
-    isa_deviation: tuple[float, ...]  # in the card's unit (differences); one entry, 0, by density altitude
+    isa_deviation: tuple[
+        float, ...
+    ]  # in the card's unit (differences); one entry, 0, by density altitude
     outside_air_temperature: NDArray[np.float64]  # (altitudes, temperatures) in the card's unit
     rpm: tuple[float, ...]  # as the tachometer reads
     state: NDArray[np.int8]
@@ -81,7 +83,9 @@ class Card:
     tables: tuple[CardTable, ...]
     reasons: tuple[Reason, ...]
     percent_of: str  # "75 % is of Maximum continuous, 230 hp at 2600 rpm"
-    stamps: tuple[str, ...]  # "DEMONSTRATION DATA, NOT FOR FLIGHT", "Not fitted: planning estimate only"
+    stamps: tuple[
+        str, ...
+    ]  # "DEMONSTRATION DATA, NOT FOR FLIGHT", "Not fitted: planning estimate only"
     notes: tuple[str, ...]  # guard bands, temperature assumption and its largest error, ...
     digest: str  # 64 hex digits; the first 12 are printed
     sections: tuple[Section, ...] = ()  # limits in words with sources, gauges, evidence, cautions

@@ -30,7 +30,8 @@ from cardgen.tables.printed import (
     temperature_step_in,
 )
 from cardgen.tables.rows import situation_of
-from cardgen.tables.solution import Model, Situation, Solution, judge, solve
+from cardgen.tables.solution import Model, Situation, Solution, solve
+from cardgen.tables.verdict import judge
 from cardgen.units import to_unit
 
 FloatArray = npt.NDArray[np.float64]

@@ -20,9 +20,8 @@ from cardgen.constants import (
     POUND,
     ZERO_CELSIUS,
 )
-from cardgen.cruise import CruiseStatus
-from cardgen.limits import Findings, Verdict
-from cardgen.tables.solution import Model, Situation, Solution, judge, solve
+from cardgen.tables.solution import Model, Situation, Solution, solve
+from cardgen.tables.verdict import judge, status_words
 
 FloatArray = npt.NDArray[np.float64]
 
@@ -244,30 +243,6 @@ def _columns(
         "weight_lb": run(situation.mass, POUND),
         "asked_percent_power": run(power, 0.01),
     }
-
-
-def status_words(findings: Findings, solution: Solution) -> list[str]:
-    """`ok`, or one word for why a setting is not.
-
-    Parameters
-    ----------
-    findings : Findings
-        What the limits say [-]
-    solution : Solution
-        The settings [-]
-
-    Returns
-    -------
-    list of str
-        One for each setting: the solver's word where it has no answer, else the first limit that is
-        broken, else `ok` [-]
-    """
-    words = np.full(findings.shape, "ok", dtype=object)
-    for judgement in reversed(findings.judgements):
-        words[judgement.verdict == Verdict.OUTSIDE] = judgement.limit
-    for status in (CruiseStatus.NO_LEVEL_FLIGHT, CruiseStatus.OUTSIDE_MODEL):
-        words[solution.point.status == status] = status.word
-    return [str(word) for word in words.reshape(-1)]
 
 
 def cells(

@@ -7,7 +7,6 @@ give. Card, table and check all ask them through `solve`.
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from typing import Final
 
 import numpy as np
 import numpy.typing as npt
@@ -16,12 +15,10 @@ from cardgen.aircraft import Aircraft, Condition, Setting
 from cardgen.airspeed import true_temperature
 from cardgen.atmosphere import (
     density_altitude,
-    pressure_altitude,
     standard_pressure,
     vapour_pressure,
 )
-from cardgen.constants import FOOT
-from cardgen.cruise import CruisePoint, CruiseStatus, solve_cruise
+from cardgen.cruise import CruisePoint, solve_cruise
 from cardgen.engine import (
     BEST_POWER_FUEL_AIR_RATIO,
     Mixture,
@@ -31,7 +28,7 @@ from cardgen.engine import (
     power_per_pressure,
 )
 from cardgen.fit import Knowledge, Subject, applied, tolerances
-from cardgen.limits import Evidence, Findings, Flown, Gauges, Limits, MessageUnits, check
+from cardgen.limits import Gauges, Limits
 from cardgen.limits.gauges import (
     indicated_manifold_pressure,
     true_manifold_pressure,
@@ -41,13 +38,6 @@ from cardgen.limits.kinds import Rating
 
 FloatArray = npt.NDArray[np.float64]
 Floats = float | FloatArray
-
-# Half a step of the rows that handbooks print: between two rows is not outside the evidence, and
-# this far beyond the last is no farther from a row than that. Common practice, no source.
-_ALTITUDE_STEP: Final = 1000.0 * FOOT
-_RPM_STEP: Final = 50.0
-_POWER_STEP: Final = 0.025
-_TEMPERATURE_STEP: Final = 5.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -362,89 +352,6 @@ def _tolerance(model: Model, ask: _Ask, mixture: int, point: CruisePoint) -> Tol
 
     pressure, power = (first / slope, first) if ask.power is None else (first, first * slope)
     return Tolerance(*(where_answered(values) for values in (pressure, fuel, speed, power)))
-
-
-def flown(model: Model, solution: Solution) -> Flown:
-    """A solution as the limits see it.
-
-    Parameters
-    ----------
-    model : Model
-        The aircraft [-]
-    solution : Solution
-        Solved settings [-]
-
-    Returns
-    -------
-    Flown
-        Arrays of the same shape [-]
-
-    Notes
-    -----
-    The tolerance of the model is not counted against a limit: it is stated beside the number. The
-    error of the gauges is counted, by `cardgen.limits.check`.
-    """
-    point = solution.point
-    situation = solution.situation
-    words = np.array([status.word for status in CruiseStatus])
-    return Flown(
-        indicated_rpm=solution.indicated_rpm,
-        indicated_manifold_pressure=solution.indicated_manifold_pressure,
-        pressure_altitude=situation.pressure_altitude,
-        temperature=situation.temperature,
-        mixture=model.subject.mixtures[situation.mixture].name,
-        power_fraction=solution.power_fraction,
-        power=point.power,
-        calibrated_airspeed=point.calibrated_airspeed,
-        full_throttle_manifold_pressure=point.full_throttle_manifold_pressure,
-        on_fine_stop=point.status == CruiseStatus.FINE_STOP,
-        on_coarse_stop=point.status == CruiseStatus.COARSE_STOP,
-        power_fraction_at_best_power=solution.best_power_fraction,
-        solved=~np.isnan(point.power),
-        status=words[point.status],
-        evidence=_evidence(model),
-    )
-
-
-def judge(model: Model, solution: Solution, *, units: MessageUnits | None = None) -> Findings:
-    """Hold a solution against every limit of the aircraft.
-
-    Parameters
-    ----------
-    model : Model
-        The aircraft [-]
-    solution : Solution
-        Solved settings [-]
-    units : MessageUnits, optional
-        Units of the messages [-]
-
-    Returns
-    -------
-    Findings
-        A judgement for every limit and setting [-]
-    """
-    return check(model.limits, model.gauges, flown(model, solution), units=units or MessageUnits())
-
-
-def _evidence(model: Model) -> Evidence | None:
-    """Range of the evidence as the limits see it, half a handbook's step wider."""
-    covers = model.knowledge.covers
-    if covers is None:
-        return None
-    high, low = (float(pressure_altitude(pressure)) for pressure in covers.pressure)
-    rated = model.percent_of.power
-    return Evidence(
-        pressure_altitude=(low - _ALTITUDE_STEP, high + _ALTITUDE_STEP),
-        rpm=(covers.rpm[0] - _RPM_STEP, covers.rpm[1] + _RPM_STEP),
-        power_fraction=(
-            covers.power[0] / rated - _POWER_STEP,
-            covers.power[1] / rated + _POWER_STEP,
-        ),
-        temperature=(
-            covers.temperature[0] - _TEMPERATURE_STEP,
-            covers.temperature[1] + _TEMPERATURE_STEP,
-        ),
-    )
 
 
 def true_temperature_of(
