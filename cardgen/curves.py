@@ -213,7 +213,7 @@ def spline_weights(t: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray, F
     return w0, w1, w2, w3
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class SplineGrid:
     """Cubic splines in three variables through values on a regular grid.
 

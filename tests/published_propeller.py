@@ -18,6 +18,8 @@ a lifting line (`lifting_line.py`) gives 1.45. No one set of section data meets 
 from __future__ import annotations
 
 import csv
+from collections.abc import Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -136,19 +138,16 @@ def calibrated(*reports: int) -> dict[str, float]:
     return dict(zip(START, found.x.tolist(), strict=True))
 
 
-class section_data:  # noqa: N801 - reads as a statement
-    """Section data in force inside a ``with`` block."""
-
-    def __init__(self, values: dict[str, float]) -> None:
-        self.values = values
-        self.before = {name: getattr(section, name) for name in values}
-
-    def __enter__(self) -> None:
-        for name, value in self.values.items():
+@contextmanager
+def section_data(values: dict[str, float]) -> Iterator[None]:
+    """Put section data in force inside a ``with`` block."""
+    before = {name: getattr(section, name) for name in values}
+    try:
+        for name, value in values.items():
             setattr(section, name, value)
-
-    def __exit__(self, *_: object) -> None:
-        for name, value in self.before.items():
+        yield
+    finally:
+        for name, value in before.items():
             setattr(section, name, value)
 
 

@@ -77,6 +77,16 @@ def test_power_rises_with_blade_angle_up_to_the_stall(propeller: Propeller) -> N
     assert np.diff(table.power_coefficient, axis=1).min() > 0.0
 
 
+@pytest.mark.parametrize("propeller", PROPELLERS)
+def test_governed_blade_angle_rises_with_power(propeller: Propeller) -> None:
+    """More power at the same rpm and airspeed always means a coarser blade."""
+    j, mach = np.linspace(0.3, 1.4, 23)[:, None, None], np.linspace(0.42, 0.93, 5)[:, None]
+    power = np.linspace(0.02, 0.1, 100)
+    angle, _ = coefficient_table(propeller).governed(j, power_coefficient=power, tip_mach=mach)
+    assert np.isfinite(angle).all()
+    assert np.diff(angle, axis=-1).min() > 0.0
+
+
 def test_table_is_nan_outside_its_domain_in_every_variable() -> None:
     """No advance ratio, blade angle, power or Mach number is extrapolated."""
     table = coefficient_table(TWO_BLADES)
@@ -91,6 +101,7 @@ def test_table_is_nan_outside_its_domain_in_every_variable() -> None:
         (0.8, {"tip_mach": 0.39}),
         (0.8, {"tip_mach": 0.96}),
         (np.nan, {}),
+        (np.inf, {}),
         (0.8, {"tip_mach": np.inf}),
     ):
         result = table.coefficients(j, **{**inside, **change})
@@ -105,6 +116,9 @@ def test_table_is_nan_outside_its_domain_in_every_variable() -> None:
         (0.8, {"power_coefficient": 0.25}),
         (0.8, {"tip_mach": 0.39}),
         (0.8, {"power_coefficient": np.nan}),
+        (0.8, {"power_coefficient": np.inf}),
+        (np.inf, {}),
+        (1e200, {}),
     ):
         assert np.isnan(table.governed(j, **{**governed, **change})).all()
 

@@ -20,9 +20,19 @@ from cardgen.propeller.governor import (
     slip,
     ungoverned_rpm,
 )
-from cardgen.propeller.table import CoefficientTable, coefficient_table, effective_helix_angle
+from cardgen.propeller.table import (
+    GREATEST_TIP_MACH,
+    LEAST_ADVANCE_RATIO,
+    LEAST_TIP_MACH,
+    CoefficientTable,
+    coefficient_table,
+    effective_helix_angle,
+)
 
 __all__ = [
+    "GREATEST_TIP_MACH",
+    "LEAST_ADVANCE_RATIO",
+    "LEAST_TIP_MACH",
     "REFERENCE_STATION",
     "Blade",
     "Body",

@@ -23,7 +23,7 @@ _ANGLE_TOLERANCE = 1e-9
 _CHUNK = 1024
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Coefficients:
     """What a propeller does at given operating points, isolated (no installation factor).
 
@@ -42,7 +42,7 @@ class Coefficients:
     angle_of_attack: FloatArray
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class _Stations:
     """Blade data at the stations of the spanwise integral, as columns."""
 

@@ -18,7 +18,7 @@ _PITCHES = tuple(float(pitch) for pitch in np.geomspace(0.04, 2.4, 24))
 _DEGREE = 10
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class LossFactor:
     """Loss factor at a set of stations, as polynomials of the sine of the inflow angle.
 

@@ -57,7 +57,7 @@ STALL_SHARPNESS = 24.0
 STALLED_DRAG = 2.49
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Section:
     """Blade sections at given Mach numbers: all that does not vary with incidence.
 

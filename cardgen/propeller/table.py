@@ -33,7 +33,7 @@ _COARSE_MARGIN = np.radians(6.0)
 _ADVANCE_RATIO_STEP = 0.1
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class CoefficientTable:
     """Coefficients over advance ratio, blade angle and tip Mach number, and their inverse.
 
@@ -135,8 +135,9 @@ class CoefficientTable:
 
     def _relative_power(self, j: FloatArray, power: FloatArray) -> FloatArray:
         """C_P between the least (0) and the greatest (1) that can be inverted at this J."""
-        least = _polynomial(self.least_power, j)
-        share: FloatArray = (power - least) / (_polynomial(self.greatest_power, j) - least)
+        with np.errstate(over="ignore", invalid="ignore"):  # far outside it ends as NaN
+            least = _polynomial(self.least_power, j)
+            share: FloatArray = (power - least) / (_polynomial(self.greatest_power, j) - least)
         return share
 
 
@@ -222,42 +223,21 @@ def coefficient_table(propeller: Propeller) -> CoefficientTable:
 @lru_cache(maxsize=32)
 def _build(shape: Propeller, steps: int) -> CoefficientTable:
     """Solve the nodes, then invert the splines through them."""
-    upper_j = LEAST_ADVANCE_RATIO + steps * _ADVANCE_RATIO_STEP
-    lower = (LEAST_ADVANCE_RATIO, _LEAST_ANGLE, LEAST_TIP_MACH)
-    upper = (upper_j, _GREATEST_ANGLE, GREATEST_TIP_MACH)
-    j, above, mach = (np.linspace(a, b, n) for a, b, n in zip(lower, upper, _NODES, strict=True))
-    jg = j[:, None, None]
-    solved = coefficients(
-        shape,
-        jg,
-        blade_angle=_datum_angle(jg) + above[None, :, None],
-        tip_mach=mach[None, None, :],
+    greatest_j = LEAST_ADVANCE_RATIO + steps * _ADVANCE_RATIO_STEP
+    forward = _forward(shape, greatest_j)
+    j, share, mach = _axes(
+        (LEAST_ADVANCE_RATIO, 0.0, LEAST_TIP_MACH),
+        (greatest_j, 1.0, GREATEST_TIP_MACH),
+        _GOVERNED_NODES,
     )
-    nodes = np.stack((solved.power_coefficient, solved.thrust_coefficient, solved.angle_of_attack))
-    _check_solved(nodes)
-    forward = SplineGrid.through(nodes, lower=lower, upper=upper)
-
-    jn, sn, mn = (
-        axis.reshape(shape_)
-        for axis, shape_ in zip(
-            (
-                np.linspace(lower[0], upper[0], _GOVERNED_NODES[0]),
-                np.linspace(0.0, 1.0, _GOVERNED_NODES[1]),
-                np.linspace(lower[2], upper[2], _GOVERNED_NODES[2]),
-            ),
-            ((-1, 1, 1), (1, -1, 1), (1, 1, -1)),
-            strict=True,
-        )
-    )
-    scan = np.linspace(lower[1], upper[1], _SCAN)
-    (power,) = forward.values((jn, scan[None, :, None], mn), (0,))
+    scan = np.linspace(_LEAST_ANGLE, _GREATEST_ANGLE, _SCAN)
+    (power,) = forward.values((j, scan[:, None], mach), (0,))
     peak = _first_peak(power)
     peak_power = np.take_along_axis(power, peak, axis=1)
-    least = _envelope(jn.ravel(), power[:, 0, :].max(axis=1), above=True)
-    greatest = _envelope(jn.ravel(), peak_power.min(axis=(1, 2)), above=False)
-
-    floor = _polynomial(least, jn)
-    wanted = floor + sn * (_polynomial(greatest, jn) - floor)
+    least = _envelope(j.ravel(), power[:, 0, :].max(axis=1), above=True)
+    greatest = _envelope(j.ravel(), peak_power.min(axis=(1, 2)), above=False)
+    floor = _polynomial(least, j)
+    wanted = floor + share * (_polynomial(greatest, j) - floor)
 
     def excess(
         angle: FloatArray, at_j: FloatArray, at_mach: FloatArray, power: FloatArray
@@ -266,23 +246,44 @@ def _build(shape: Propeller, steps: int) -> CoefficientTable:
         return absorbed - power
 
     angle = find_root(
-        excess,
-        lower[1],
-        scan[peak],
-        arguments=(jn, mn, wanted),
-        tolerance=1e-10,
+        excess, _LEAST_ANGLE, scan[peak], arguments=(j, mach, wanted), tolerance=1e-10
     )
     _check_solved(angle)
-    (thrust,) = forward.values((jn, angle, mn), (1,))
+    (thrust,) = forward.values((j, angle, mach), (1,))
     inverse = SplineGrid.through(
-        np.stack((angle, thrust)), lower=(lower[0], 0.0, lower[2]), upper=(upper[0], 1.0, upper[2])
+        np.stack((angle, thrust)),
+        lower=(LEAST_ADVANCE_RATIO, 0.0, LEAST_TIP_MACH),
+        upper=(greatest_j, 1.0, GREATEST_TIP_MACH),
     )
     return CoefficientTable(forward, inverse, least, greatest)
 
 
+def _forward(shape: Propeller, greatest_j: float) -> SplineGrid:
+    """Splines of C_P, C_T and section angle of attack through directly solved nodes."""
+    lower = (LEAST_ADVANCE_RATIO, _LEAST_ANGLE, LEAST_TIP_MACH)
+    upper = (greatest_j, _GREATEST_ANGLE, GREATEST_TIP_MACH)
+    j, above, mach = _axes(lower, upper, _NODES)
+    solved = coefficients(shape, j, blade_angle=_datum_angle(j) + above, tip_mach=mach)
+    nodes = np.stack((solved.power_coefficient, solved.thrust_coefficient, solved.angle_of_attack))
+    _check_solved(nodes)
+    return SplineGrid.through(nodes, lower=lower, upper=upper)
+
+
+def _axes(
+    lower: tuple[float, float, float],
+    upper: tuple[float, float, float],
+    counts: tuple[int, int, int],
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Equally spaced nodes of three variables, shaped to broadcast into their grid."""
+    first, second, third = (
+        np.linspace(low, high, count) for low, high, count in zip(lower, upper, counts, strict=True)
+    )
+    return first[:, None, None], second[:, None], third
+
+
 def _datum_angle(j: FloatArray) -> FloatArray:
     """Blade angle from which the tables count: nearly that of the undisturbed helix."""
-    lifted = np.sqrt(j * j + _LIFTED_BY**2)
+    lifted = np.hypot(j, _LIFTED_BY)
     datum: FloatArray = np.arctan(lifted / (REFERENCE_STATION * np.pi))
     return datum
 
