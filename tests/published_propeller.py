@@ -6,8 +6,8 @@ How they are compared: blade angles 15 to 35 degrees, advance ratios from 60 % t
 best efficiency at the angle. The tip Mach number follows from the test rpm; TR 640's is not in the
 file and taken as TR 658's. Efficiency is the one printed where there is one (TR 658), else
 J C_T / C_P. Both reports measured thrust with a nacelle behind the propeller, which is part of the
-comparison; its diameter (43 in behind 10 ft) is from memory, its distance and drag coefficient are
-estimates of that kind of nacelle.
+comparison; its diameter (43 in behind 10 ft) is from memory; its distance and drag coefficient are
+plausible for that kind of nacelle and were set with both reports in view.
 
 Defects of the sources: TR 640 at 25 degrees and J 1.1 lies 0.015 too high in efficiency; printed
 efficiency and J C_T / C_P of TR 658 differ by up to 0.03; with the same blades at the same angle,
@@ -152,7 +152,11 @@ def section_data(values: dict[str, float]) -> Iterator[None]:
 
 
 def cross_validation() -> dict[str, Agreement]:
-    """How well data calibrated on one report, or on none, meet a report they have not seen."""
+    """How well the six calibrated values meet a report they have not seen.
+
+    The values marked * in `section` and the nacelle were set with both reports in view, so this
+    tests the calibration, not every number.
+    """
     result = {}
     uncalibrated = {name: value for name, (value, _) in START.items()}
     for title, values, report in (

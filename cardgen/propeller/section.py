@@ -9,23 +9,24 @@ from numpy.typing import ArrayLike, NDArray
 
 FloatArray = NDArray[np.float64]
 
-# Published values, from memory of the wind-tunnel literature unless said otherwise.
+# Round values from memory of the wind-tunnel literature. Those marked * are known only roughly; they
+# were set inside their plausible range with the tests of NACA TR 640 and TR 658 in view.
 
 #: Thickness of the Clark Y itself over its chord. Thinner and thicker sections of the family
 #: scale every ordinate with it, and so the camber.
 CLARK_Y_THICKNESS = 0.117
-#: Thickness over chord at which half the camber's effect is lost: the thick sections near the
+#: * Thickness over chord at which half the camber's effect is lost: the thick sections near the
 #: hub separate on their rounded backs and pass into the round shank.
 CAMBER_LIMIT = 0.27
-#: Thickness over chord at which a section makes half the lift of a thin one, and about which its
+#: * Thickness over chord at which a section makes half the lift of a thin one, and about which its
 #: drag turns into that of a round shank.
 BLUNT_THICKNESS = 0.48
 #: Drag coefficient of a round shank above its critical Reynolds number.
 SHANK_DRAG = 0.6
-#: Lift coefficient of least drag, and how drag rises with the square of the lift beyond it.
+#: * Lift coefficient of least drag, and how drag rises with the square of the lift beyond it.
 LIFT_OF_LEAST_DRAG = 0.23
 DRAG_RISE_WITH_LIFT = 0.012
-#: Lift coefficient deep in the stall, and the incidence at which it is reached to 70 % [rad].
+#: * Lift coefficient deep in the stall, and the incidence at which it is reached to 70 % [rad].
 STALLED_LIFT = 1.08
 STALLED_LIFT_INCIDENCE = 0.15
 #: Factor of (c/r)^2 by which rotation gives stalled lift back (Snel).
