@@ -9,7 +9,7 @@ from numpy.typing import ArrayLike, NDArray
 
 FloatArray = NDArray[np.float64]
 
-# Round values from memory of the wind-tunnel literature. Those marked * are known only roughly; they
+# Round values from memory of the wind-tunnel literature. Those marked * are known only roughly and
 # were set inside their plausible range with the tests of NACA TR 640 and TR 658 in view.
 
 #: Thickness of the Clark Y itself over its chord. Thinner and thicker sections of the family
