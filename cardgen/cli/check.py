@@ -154,12 +154,13 @@ def _text(report: SettingReport) -> list[str]:
     """Return a report as lines: verdict, findings, what to set instead, what the setting gives."""
     lines = [report.verdict.upper(), ""]
     for finding in report.findings:
-        if finding.verdict == "inside" and finding.limit != "over_square":
-            continue
-        source = f" ({finding.source})" if finding.source else ""
-        lines.append(f"{finding.verdict}: {finding.message}{source}")
-    inside = [finding for finding in report.findings if finding.verdict == "inside"]
-    lines += [f"inside: {finding.message}" for finding in inside if finding.limit != "over_square"]
+        if finding.verdict != "inside":
+            source = f" ({finding.source})" if finding.source else ""
+            lines.append(f"{finding.verdict}: {finding.message}{source}")
+    for finding in report.findings:
+        if finding.verdict == "inside":
+            # What is kept is told by its margin alone; the whole wording stands in the JSON.
+            lines.append(f"inside: {finding.message.split('; ')[0]}")
     if report.instead:
         lines += ["", "Same power within the limits:"]
         lines += [

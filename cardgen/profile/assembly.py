@@ -233,3 +233,21 @@ def _evidence_lines(profile: Profile, learned: Learned | None) -> tuple[str, ...
             f"{covers.power[1] / profile.percent_of.power:.0%} power."
         )
     return tuple(lines)
+
+
+def part_digests(profile: Profile, learned: Learned | None) -> dict[str, str]:
+    """Return the digest of each thing whose change makes another card.
+
+    Parameters
+    ----------
+    profile : Profile
+        The profile [-]
+    learned : Learned, optional
+        A fit that applies to it [-]
+
+    Returns
+    -------
+    dict
+        Digest by name: the parts of the profile, and the fit [-]
+    """
+    return {**profile.part_digests, "fit": learned.digest if learned else ""}
