@@ -179,7 +179,7 @@ def _read_tables(
     """Read every part of a table on a page, strike its cells off, and return them."""
     seen: list[tuple[int, tuple[int, int, int]]] = []
     start = 0
-    while (head := _find(words, "rpm", start)) is not None:
+    while (head := _find_head(words, start)) is not None:
         index = next((k for k, cells in enumerate(unread) if cells), None)
         if index is None:
             raise ReleaseError(f"read-back: {place} carries a table that the card has not")
@@ -207,8 +207,18 @@ def _read_tables(
     return seen
 
 
-def _find(words: Sequence[Word], text: str, start: int) -> int | None:
-    return next((k for k in range(start, len(words)) if words[k].text == text), None)
+def _find_head(words: Sequence[Word], start: int) -> int | None:
+    """Return where the next row of rpm begins: the word with figures beside it, not a mere line."""
+    return next(
+        (
+            k
+            for k in range(start, len(words) - 1)
+            if words[k].text == "rpm"
+            and words[k + 1].text.isdigit()
+            and words[k + 1].y == words[k].y
+        ),
+        None,
+    )
 
 
 def _check_title(card: Card, table: CardTable, words: Sequence[Word], place: str) -> None:
