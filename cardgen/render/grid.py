@@ -61,8 +61,13 @@ def title_height(grid: Grid, continued: str) -> float:
 def head_height(grid: Grid) -> float:
     """Return the height of the column heads [pt]."""
     lines = 2 if grid.style.stacked else 1
-    groups = LEADING * NOTE + 2.0 if grid.across else 0.0
+    groups = _group_height(grid)
     return groups + grid.style.lead + LEADING * NOTE * lines + 3.0
+
+
+def _group_height(grid: Grid) -> float:
+    """Return the height of the temperatures over the rpm, a full line gap between the two."""
+    return NOTE + (LEADING - 1.0) * grid.style.setting if grid.across else 0.0
 
 
 def row_height(grid: Grid, row: tuple[int, int]) -> float:
@@ -179,12 +184,12 @@ def _heads(grid: Grid, x: float, top: float) -> list[Box]:
     style, units = grid.style, grid.card.choices.units
     boxes: list[Box] = []
     if grid.across:
-        y = top - LEADING * NOTE
+        y = top - NOTE
         for column, _, before in _columns(grid, x):
             if before is not None:
                 name = deviation_name(grid.card, grid.table.isa_deviation[column[0]])
                 boxes.append(Run(before + PAD, y, printable(name), "bold", NOTE))
-        top -= LEADING * NOTE + 2.0
+        top -= _group_height(grid)
     y = top - style.lead + 0.25 * style.setting
     left = (
         x + grid.columns.altitude_width + (0.0 if grid.across else grid.columns.temperature_width)

@@ -1,0 +1,166 @@
+"""A card can be read at arm's length at night: measured from the finished PDF, not from layout.
+
+Least sizes, line gap, margins and marking are those the project sets itself; common practice for
+cockpit documents, no single source.
+"""
+
+from __future__ import annotations
+
+from itertools import pairwise
+
+import pytest
+from card_factory import Sketch
+from test_render_pdf import RANDOM_CARDS, edition_of, pdf_of, random_sketch
+
+from cardgen.render.edition import Edition
+from cardgen.render.fonts import Face, width
+from cardgen.render.paper import PAPERS, find_paper
+from cardgen.render.wording import SUPPLEMENTARY, cell_texts
+from cardgen.render.words import Word, read_words
+from cardgen.tables.card import CellState
+
+LEAST_SETTING, LEAST_FIGURE, LEAST_NOTE, LEAST_STAMP = 12.0, 11.0, 9.0, 13.0
+LINE_GAP = 1.25
+ROUNDING = 0.02  # positions in the file are rounded to two or three decimals [pt]
+
+# Height of a figure and depth of a descender over the size, a little less than drawn so that
+# neighbours may touch but not cross.
+FIGURE_HEIGHT, DEPTH = 0.71, 0.19
+
+EXTREMES = (
+    Sketch(),
+    Sketch(altitudes=12, rpm=6, tables=2, long=True, reasons=4, fitted=False),
+    Sketch(altitudes=12, rpm=6, temperatures=3, kind="pressure", tables=1, metric=True, reasons=3),
+    Sketch(altitudes=8, rpm=1, temperatures=3, kind="pressure"),
+    Sketch(altitudes=1, rpm=1, tables=1, reasons=0, stamps=False),
+)
+
+
+def face(word: Word) -> Face:
+    return "bold" if "Bold" in word.font else "regular"
+
+
+def right(word: Word) -> float:
+    return word.x + width(word.text, face(word), word.size)
+
+
+def pages_of(edition: Edition, paper: str) -> tuple[tuple[Word, ...], ...]:
+    return read_words(pdf_of(edition, paper=paper))
+
+
+def check_sizes(edition: Edition, pages: tuple[tuple[Word, ...], ...]) -> None:
+    words = [word for page in pages for word in page]
+    assert min(word.size for word in words) >= LEAST_NOTE - ROUNDING
+    texts = [word.text for word in words]
+    for table in edition.card.tables:
+        for at in zip(*(table.state <= CellState.FULL_THROTTLE).nonzero(), strict=True):
+            cell = list(cell_texts(edition.card, table, at))
+            places = [k for k in range(len(texts)) if texts[k : k + len(cell)] == cell]
+            assert places, f"{cell} is nowhere"
+            for k in places:
+                pressure, flow, speed = words[k : k + 3]
+                assert pressure.size >= LEAST_SETTING - ROUNDING
+                assert face(pressure) == "bold"
+                assert pressure.size >= max(flow.size, speed.size)
+                assert min(flow.size, speed.size) >= LEAST_FIGURE - ROUNDING
+
+
+def check_gaps(page: tuple[Word, ...]) -> None:
+    """Require baselines 1.25 sizes apart wherever one word stands over another."""
+    for lower in page:
+        above = [
+            word
+            for word in page
+            if word.y > lower.y + ROUNDING and word.x < right(lower) and right(word) > lower.x
+        ]
+        for word in above:
+            assert word.y - lower.y >= LINE_GAP * lower.size - ROUNDING, (word, lower)
+
+
+def check_no_overlap(page: tuple[Word, ...]) -> None:
+    for k, one in enumerate(page):
+        for other in page[k + 1 :]:
+            apart = (
+                right(one) <= other.x + ROUNDING
+                or right(other) <= one.x + ROUNDING
+                or one.y - DEPTH * one.size >= other.y + FIGURE_HEIGHT * other.size
+                or other.y - DEPTH * other.size >= one.y + FIGURE_HEIGHT * one.size
+            )
+            assert apart, (one, other)
+
+
+def check_margins(pages: tuple[tuple[Word, ...], ...], name: str) -> None:
+    paper = find_paper(name)
+    for index, page in enumerate(pages):
+        start = 0.0
+        if paper.sheet is not None:
+            middle = 0.5 * paper.sheet[0]
+            start = middle if index % 2 else middle - paper.width
+        front = index % 2 == 0
+        left_margin = paper.binder if front else paper.margin
+        right_margin = paper.margin if front else paper.binder
+        for word in page:
+            assert word.x >= start + left_margin - ROUNDING, word
+            assert right(word) <= start + paper.width - right_margin + ROUNDING, word
+            assert word.y - DEPTH * word.size >= paper.margin - ROUNDING, word
+            assert word.y + FIGURE_HEIGHT * word.size <= paper.height - paper.margin + ROUNDING
+
+
+def check_marking(edition: Edition, pages: tuple[tuple[Word, ...], ...]) -> None:
+    for index, page in enumerate(pages):
+        text = " ".join(word.text for word in page)
+        assert edition.identity.registration in text
+        assert edition.identity.engine.serial in text
+        assert edition.identity.propeller.serial in text
+        assert SUPPLEMENTARY in text
+        assert edition.card.digest[:12] in text
+        assert f"page {index + 1} of {len(pages)}" in text
+        assert edition.identity.date in text
+        assert "Tolerance" in text
+        assert edition.card.percent_of in text
+        stamped = " ".join(word.text for word in page if word.size >= LEAST_STAMP - ROUNDING)
+        for stamp in edition.card.stamps:
+            assert stamp in stamped
+
+
+def check_card(edition: Edition, paper: str) -> None:
+    pages = pages_of(edition, paper)
+    check_sizes(edition, pages)
+    check_margins(pages, paper)
+    check_marking(edition, pages)
+    for page in pages:
+        check_gaps(page)
+        check_no_overlap(page)
+
+
+@pytest.mark.parametrize("paper", ["half-letter", "a4", "a6"])
+@pytest.mark.parametrize("sketch", EXTREMES)
+def test_extreme_cards_are_legible(sketch: Sketch, paper: str) -> None:
+    check_card(edition_of(sketch), paper)
+
+
+@pytest.mark.parametrize("seed", range(100, 100 + RANDOM_CARDS))
+def test_random_cards_are_legible(seed: int) -> None:
+    papers = tuple(PAPERS)
+    check_card(edition_of(random_sketch(seed)), papers[seed % len(papers)])
+
+
+def test_numbers_of_a_cell_stand_close_together() -> None:
+    """The eye must not have to bridge a gap wider than two figures."""
+    edition = edition_of(Sketch(reasons=0))
+    pages = pages_of(edition, "half-letter")
+    words = [word for page in pages for word in page]
+    texts = [word.text for word in words]
+    table = edition.card.tables[0]
+    cell = list(cell_texts(edition.card, table, (0, 0, 0)))
+    k = next(k for k in range(len(texts)) if texts[k : k + len(cell)] == cell)
+    for one, other in pairwise(words[k : k + 3]):
+        if one.y == other.y:
+            assert other.x - right(one) <= 2.0 * width("00", face(one), one.size)
+
+
+def test_nothing_is_set_in_colour() -> None:
+    """Meaning survives a photocopier and a red lamp: every ink on the page is a grey."""
+    pdf = pdf_of(edition_of(Sketch()), compress=False)
+    operators = {line.split()[-1] for line in pdf.split(b"\n") if line.strip()}
+    assert not operators & {b"rg", b"RG", b"k", b"K", b"sc", b"SC", b"scn", b"SCN"}
