@@ -80,6 +80,14 @@ CASES = {
         (AIRCRAFT, "card:", "? [a, b]\n: c\ncard:"),
         "aircraft/plane.yaml:43:3: a key is not text, expected a word as the key",
     ),
+    "a merge key": (
+        (AIRCRAFT, "identity:", "identity:\n  <<: {serial: x}"),
+        "aircraft/plane.yaml:8:3: identity: '<<' is not a key, expected a word as the key",
+    ),
+    "a key that looks like one of our own marks": (
+        (AIRCRAFT, "card:", "<list>: x\ncard:"),
+        "aircraft/plane.yaml:43:1: '<list>' is not a key, expected a word as the key",
+    ),
     # --- quantities and other values ----------------------------------------------------------
     "a unit of another dimension": (
         (AIRCRAFT, "170 ft2", "170 ft"),

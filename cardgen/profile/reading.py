@@ -23,6 +23,7 @@ LARGEST_FILE = 1_000_000  # bytes; a complete profile is about 10 000
 DEEPEST_NESTING = 12  # a complete profile needs 6
 MOST_NODES = 10_000  # a complete profile has about 600
 _LOADER = getattr(yaml, "CSafeLoader", yaml.SafeLoader)
+_KEY = re.compile(r"[^\W\d][\w -]{0,59}")  # so no key is "<<", the merge key of YAML 1.1
 _NO_VALUE = frozenset({"~", "null", "Null", "NULL"})  # plain spellings of nothing in YAML 1.1
 _NOT_TEXT = re.compile(  # the characters that YAML 1.1 does not print, section 5.1
     "[^\t\n\r\x20-\x7e\x85\xa0-\ud7ff\ue000-\ufffd\U00010000-\U0010ffff]"
@@ -173,18 +174,43 @@ def read_tree(text: str, *, shown: str) -> Document:
     return Document(root, tuple(builder.problems))
 
 
-def _read_text(path: Path) -> str:
+def read_text(path: Path, *, shown: str, kind: str) -> str | Problem:
+    """Read the text of a file of sane size, kind and encoding.
+
+    Parameters
+    ----------
+    path : Path
+        The file [-]
+    shown : str
+        How the problem names it [-]
+    kind : str
+        What kind of file is expected, with its article [-]
+
+    Returns
+    -------
+    str or Problem
+        The text, or why it cannot be read [-]
+    """
+    try:
+        return _read_text(path, kind=kind)
+    except _UnreadableError as error:
+        return error.problem(shown)
+
+
+def _read_text(path: Path, *, kind: str = "a YAML file") -> str:
     """Return the text of a file of sane size, kind and encoding."""
     try:
         status = path.stat()
         if stat.S_ISDIR(status.st_mode):
-            raise _UnreadableError(_WHOLE_FILE, "is a folder", "a YAML file")
+            raise _UnreadableError(_WHOLE_FILE, "is a folder", kind)
         if not stat.S_ISREG(status.st_mode):
-            raise _UnreadableError(_WHOLE_FILE, "is not a regular file", "a YAML file")
+            raise _UnreadableError(_WHOLE_FILE, "is not a regular file", kind)
         with path.open("rb") as stream:
             data = stream.read(LARGEST_FILE + 1)
     except FileNotFoundError:
-        raise _UnreadableError(_WHOLE_FILE, "does not exist", "an existing YAML file") from None
+        raise _UnreadableError(
+            _WHOLE_FILE, "does not exist", kind.replace("a ", "an existing ", 1)
+        ) from None
     except ValueError:  # a null character in the path
         raise _UnreadableError(_WHOLE_FILE, "is not a file name") from None
     except OSError as error:
@@ -195,19 +221,12 @@ def _read_text(path: Path) -> str:
             _WHOLE_FILE, f"is larger than {LARGEST_FILE} bytes", "a file of at most 1 MB"
         )
     try:
-        text = data.decode("utf-8-sig")
+        return data.decode("utf-8-sig")
     except UnicodeDecodeError as error:
         place = _place_at(data[: error.start].decode("utf-8-sig"))
         raise _UnreadableError(
             place, f"byte 0x{data[error.start]:02X} is not UTF-8 text", "a file saved as UTF-8"
         ) from None
-    if (odd := _NOT_TEXT.search(text)) is not None:
-        raise _UnreadableError(
-            _place_at(text[: odd.start()]),
-            f"control character U+{ord(odd[0]):04X} in the text",
-            "printable text only",
-        )
-    return text
 
 
 def _place_at(before: str) -> Place:
@@ -235,6 +254,12 @@ class _Builder:
 
     def build(self, text: str) -> Node:
         """Return the tree of the only document in a text."""
+        if (odd := _NOT_TEXT.search(text)) is not None:
+            raise _UnreadableError(
+                _place_at(text[: odd.start()]),
+                f"control character U+{ord(odd[0]):04X} in the text",
+                "printable text only",
+            )
         loader = _LOADER(text)
         try:
             events = _events(loader)
@@ -294,11 +319,10 @@ class _Builder:
         node = Node(place, content)
         while not isinstance(event := next(events), yaml.MappingEndEvent):
             key_node = self.node(event, events, depth=depth + 1)
-            key = key_node.content
-            if not isinstance(key, str) or not key:
-                self.report(
-                    key_node.place, dotted(self.path), "a key is not text", "a word as the key"
-                )
+            key = key_node.content if isinstance(key_node.content, str) else ""
+            if not _KEY.fullmatch(key):
+                found = f"{key[:20]!r} is not a key" if key else "a key is not text"
+                self.report(key_node.place, dotted(self.path), found, "a word as the key")
                 key = ""
             self.path.append(key)
             value = self.node(next(events), events, depth=depth + 1)

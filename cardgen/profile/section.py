@@ -44,7 +44,7 @@ def by_shape(**words: str) -> Discriminator:
     Returns
     -------
     Discriminator
-        Chooses the tag `<text>`, `<list>` or `<mapping>`, which no key can be mistaken for [-]
+        Chooses the tag `<text>`, `<list>` or `<mapping>`, which are no keys [-]
     """
     shapes = {"text": str, "list": list, "mapping": dict}
 
