@@ -24,6 +24,7 @@ NOTE: Final = 9.0  # least size of notes [pt]
 LEAST_SETTING: Final = 12.0
 LEAST_FIGURE: Final = 11.0
 PAD: Final = 3.0  # between a cell's content and its edge [pt]
+PAD_IN_LINE: Final = 4.5  # so that a speed is not read with the pressure of the next rpm [pt]
 GAP: Final = 5.0  # between the numbers of a cell [pt]
 FRAME_PAD: Final = 2.0
 GREATEST_SLACK: Final = 1.45  # a column is at most so much wider than its content
@@ -40,6 +41,11 @@ class Style:
     def figure(self) -> float:
         """Size of fuel flow, speed and altitude [pt]."""
         return max(LEAST_FIGURE, round(2.0 * 0.8 * self.setting) / 2.0)
+
+    @property
+    def pad(self) -> float:
+        """Air on both sides of a column [pt]; more where three numbers stand in a line."""
+        return PAD if self.stacked else PAD_IN_LINE
 
     @property
     def lead(self) -> float:
@@ -84,7 +90,7 @@ class Columns:
     @property
     def fits(self) -> bool:
         """Whether every column is wide enough for its content."""
-        return self.column_width >= self.content_width + 2.0 * PAD
+        return self.column_width >= self.content_width + 2.0 * self.style.pad
 
 
 @dataclass(frozen=True, slots=True)
@@ -188,7 +194,7 @@ def _columns_of(
         bare, marked = max(pressure, pair), max(pressure + GAP + mark, pair)
     else:
         bare, marked = pressure + GAP + pair, pressure + GAP + pair + GAP + mark
-    inline = bool(marks) and marked + 2.0 * PAD <= share
+    inline = bool(marks) and marked + 2.0 * style.pad <= share
     rpm = (number(table.rpm[column[1]]) for column in columns)
     content = max(
         marked if inline else bare,
@@ -206,7 +212,7 @@ def _columns_of(
         mark_width=mark,
         mark_inline=inline,
         content_width=content,
-        column_width=min(share, GREATEST_SLACK * (content + 2.0 * PAD)),
+        column_width=min(share, GREATEST_SLACK * (content + 2.0 * style.pad)),
     )
 
 

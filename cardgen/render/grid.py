@@ -41,8 +41,8 @@ def title_lines(grid: Grid, continued: str) -> tuple[tuple[str, Face, float], ..
     return tuple(lines)
 
 
-TITLE_SIZE: Final = 18.0
-NAME_SIZE: Final = 13.0
+TITLE_SIZE: Final = 22.0
+NAME_SIZE: Final = 14.0
 
 
 def _name_lines(grid: Grid) -> tuple[str, ...]:

@@ -21,10 +21,11 @@ from cardgen.render.wording import (
 )
 from cardgen.tables.card import CardTable
 
-REGISTRATION_SIZE: Final = 18.0
+REGISTRATION_SIZE: Final = 14.0
 STAMP_SIZE: Final = 13.0
 GOVERNS_SIZES: Final = (10.5, 10.0, 9.5)  # the largest that fits one line, else the last
 _PAD: Final = 4.0
+_CORNER_GAP: Final = 10.0
 
 Line = tuple[str, Face, float]
 
@@ -35,6 +36,7 @@ class Marking:
 
     registration: str
     corner: tuple[str, str]  # issue and date; page n of m
+    corner_below: bool  # a long registration leaves no room beside it
     stamps: tuple[str, ...]
     configuration: tuple[str, ...]
     foot: tuple[str, ...]
@@ -44,7 +46,7 @@ class Marking:
     @property
     def head_height(self) -> float:
         """Height of everything above the tables [pt]."""
-        height = LEADING * REGISTRATION_SIZE
+        height = LEADING * REGISTRATION_SIZE + (LEADING * NOTE if self.corner_below else 0.0)
         height += LEADING * NOTE * len(self.configuration)
         if self.stamps:
             height += LEADING * STAMP_SIZE * len(self.stamps) + 2.0 * _PAD + 4.0
@@ -88,9 +90,13 @@ def mark_page(
     def lines(text: str, face: Face = "regular", size: float = NOTE) -> tuple[str, ...]:
         return wrap(text, face, size=size, measure=measure)
 
+    registration = printable(identity.registration)
+    corner = (printable(issue_text(identity, edition.issue)), page_text(page, pages))
+    taken = width(registration, "bold", REGISTRATION_SIZE) + _corner_width(corner)
     return Marking(
-        registration=printable(identity.registration),
-        corner=(printable(issue_text(identity, edition.issue)), page_text(page, pages)),
+        registration=registration,
+        corner=corner,
+        corner_below=taken + _CORNER_GAP > measure,
         stamps=tuple(
             line
             for stamp in card.stamps
@@ -106,6 +112,11 @@ def mark_page(
         governs=wrap(SUPPLEMENTARY, "bold", size=governs_size, measure=inner),
         governs_size=governs_size,
     )
+
+
+def _corner_width(corner: tuple[str, str]) -> float:
+    """Return how wide issue and page number run side by side [pt]."""
+    return sum(width(text, "bold", NOTE) for text in corner) + _CORNER_GAP
 
 
 def place_head(marking: Marking, *, x: float, top: float, measure: float) -> tuple[Box, ...]:
@@ -125,11 +136,12 @@ def place_head(marking: Marking, *, x: float, top: float, measure: float) -> tup
     """
     y = top - CAP_HEIGHT * REGISTRATION_SIZE
     boxes: list[Box] = [Run(x, y, marking.registration, "bold", REGISTRATION_SIZE)]
-    for k, text in enumerate(marking.corner):
-        # Two short lines beside the registration: the upper one at its cap line.
-        line_y = top - CAP_HEIGHT * NOTE - LEADING * NOTE * k
-        boxes.append(Run(x + measure - width(text, "bold", NOTE), line_y, text, "bold", NOTE))
-    y = top - LEADING * REGISTRATION_SIZE
+    line_y = y - LEADING * NOTE if marking.corner_below else y
+    issue, page = marking.corner
+    end = x + measure
+    boxes.append(Run(end - _corner_width(marking.corner), line_y, issue, "bold", NOTE))
+    boxes.append(Run(end - width(page, "bold", NOTE), line_y, page, "bold", NOTE))
+    y = line_y - (LEADING - CAP_HEIGHT) * REGISTRATION_SIZE
     if marking.stamps:
         height = LEADING * STAMP_SIZE * len(marking.stamps) + 2.0 * _PAD
         boxes.append(Frame(x, y - height, measure, height, 1.8))
