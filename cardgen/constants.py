@@ -76,8 +76,8 @@ ZERO_CELSIUS: Final = 273.15
 INCH: Final = 0.0254
 """International inch, exact [m]; NIST SP 811 B.8."""
 
-FOOT: Final = 12.0 * INCH
-"""International foot [m]; NIST SP 811 B.8."""
+FOOT: Final = 0.3048
+"""International foot of 12 inches, exact [m]; NIST SP 811 B.8."""
 
 STATUTE_MILE: Final = 5280.0 * FOOT
 """Mile of 5280 international feet [m]; NIST SP 811 B.8."""

@@ -21,7 +21,12 @@ if TYPE_CHECKING:
     type=click.Choice(["aircraft", "engine", "propeller"]),
     help="Print the JSON Schema of one kind of file instead, for an editor.",
 )
-def new(file: str | None, schema: str | None) -> None:
+@click.option(
+    "--keys",
+    type=click.Choice(["aircraft", "engine", "propeller"]),
+    help="List the keys of one kind of file instead, with what may be written.",
+)
+def new(file: str | None, schema: str | None, keys: str | None) -> None:
     """Write a commented starter profile.
 
     FILE is the aircraft file to write, such as profiles/aircraft/mine.yaml; its engine and
@@ -31,9 +36,17 @@ def new(file: str | None, schema: str | None) -> None:
     Examples:
       cardgen new profiles/aircraft/mine.yaml
       cardgen new --schema aircraft > aircraft.schema.json
+      cardgen new --keys propeller
     """
-    if (file is None) == (schema is None):
-        raise click.UsageError("Give either a FILE to write or --schema KIND.")
+    if sum(given is not None for given in (file, schema, keys)) != 1:
+        raise click.UsageError("Give a FILE to write, --schema KIND or --keys KIND, one of them.")
+    if keys is not None:
+        from cardgen.profile.keys import list_keys  # noqa: PLC0415 - slow to import
+
+        for key in list_keys(cast("Kind", keys)):
+            need = "" if key.required else " (may be left out)"
+            click.echo(f"{key.path}{need}\n    {key.description}\n    {key.value}")
+        return
     if schema is not None:
         from cardgen.profile.schema import schema as schema_of  # noqa: PLC0415 - slow to import
 
