@@ -157,10 +157,12 @@ def _text(report: SettingReport) -> list[str]:
         if finding.verdict != "inside":
             source = f" ({finding.source})" if finding.source else ""
             lines.append(f"{finding.verdict}: {finding.message}{source}")
-    for finding in report.findings:
-        if finding.verdict == "inside":
-            # What is kept is told by its margin alone; the whole wording stands in the JSON.
-            lines.append(f"inside: {finding.message.split('; ')[0]}")
+    # What is kept is told by its margin alone; the whole wording stands in the JSON.
+    lines += [
+        f"inside: {finding.message.split('; ')[0]}"
+        for finding in report.findings
+        if finding.verdict == "inside"
+    ]
     if report.instead:
         lines += ["", "Same power within the limits:"]
         lines += [
