@@ -1,7 +1,7 @@
 """Fit: evidence, priors, least squares, covariance, tolerances."""
 
 from cardgen.fit.estimate import Estimate, estimate
-from cardgen.fit.evidence import QUANTITIES, Evidence, standard_deviations
+from cardgen.fit.evidence import QUANTITIES, Evidence, Reading, standard_deviations
 from cardgen.fit.knowledge import (
     EvidenceRange,
     Knowledge,
@@ -12,6 +12,7 @@ from cardgen.fit.knowledge import (
 )
 from cardgen.fit.model import Subject, cruise_of_rows, mixture_of_rows, predict
 from cardgen.fit.parameters import (
+    FUEL_SCALE_PREFIX,
     PARTS,
     Parameter,
     Part,
@@ -23,6 +24,7 @@ from cardgen.fit.parameters import (
 from cardgen.fit.tolerance import tolerances
 
 __all__ = [
+    "FUEL_SCALE_PREFIX",
     "PARTS",
     "QUANTITIES",
     "Estimate",
@@ -31,6 +33,7 @@ __all__ = [
     "Knowledge",
     "Parameter",
     "Part",
+    "Reading",
     "Subject",
     "applied",
     "carried_over",

@@ -53,7 +53,8 @@ class Estimate:
         Standard deviation of what model and table disagree in besides parameters, SI, in the order
         of `cardgen.fit.evidence.QUANTITIES`
     residual : ndarray, shape (rows, 3)
-        Model less evidence, SI; NaN where nothing was read
+        Model less evidence, SI; NaN where nothing was read, and for a manifold pressure that was
+        asked of the model
     left_out : ndarray, shape (rows, 3)
         The same for a fit that has not seen the row, to first order
     standardised : ndarray, shape (rows, 3)
@@ -229,6 +230,9 @@ def _described(
 ) -> Estimate:
     """Covariance, scatter and leave-one-out residuals at the parameters found."""
     residual = predict(subject, evidence, values=values) - evidence.read()
+    # Where a manifold pressure was asked and is within reach, it is no prediction that could fail.
+    asked = np.isnan(evidence.power) & (residual[:, 0] == 0.0)
+    residual[asked, 0] = np.nan
     known = ~np.isnan(residual)
     plain = np.where(known, residual / expected, 0.0)
     weight = np.where(known, (1.0 + (plain / ROBUST_FROM) ** 2) ** -0.5, 0.0)
@@ -261,13 +265,18 @@ def _described(
         names=tuple(parameter.name for parameter in parameters(subject.mixtures)),
         values=values,
         prior=prior,
-        covariance=np.linalg.inv(information / excess + inverse_spread),
+        covariance=_symmetric(np.linalg.inv(information / excess + inverse_spread)),
         prior_deviation=np.asarray(np.sqrt(np.diag(spread))),
         scatter=scatter,
         residual=residual,
         left_out=left_out,
         standardised=standardised,
     )
+
+
+def _symmetric(matrix: FloatArray) -> FloatArray:
+    """Take the last bits of rounding out of a matrix that is symmetric by its making."""
+    return np.asarray(0.5 * (matrix + matrix.T))
 
 
 def _excess(plain: FloatArray, known: npt.NDArray[np.bool_]) -> float:

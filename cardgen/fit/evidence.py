@@ -9,6 +9,7 @@ import numpy as np
 import numpy.typing as npt
 
 from cardgen.constants import HOUR, INCH_OF_MERCURY, KNOT, POUND
+from cardgen.units import Unit
 
 FloatArray = npt.NDArray[np.float64]
 
@@ -37,6 +38,9 @@ class Evidence:
         What was read, NaN where it was not; true pressure [Pa], mass flow [kg/s], speed [m/s]
     rounding : ndarray, shape (rows, 3)
         Last printed step of the three, in the same units; 0 where unknown [-]
+    spread : ndarray, shape (rows, 3)
+        Standard deviation that the measurement itself shows, such as between sets of ground legs,
+        in the same units; 0 where it shows none [-]
     flight : ndarray of bool
         Whether the row was flown rather than printed in a handbook [-]
     place : tuple of str
@@ -53,6 +57,7 @@ class Evidence:
     fuel_flow: FloatArray
     true_airspeed: FloatArray
     rounding: FloatArray
+    spread: FloatArray
     flight: npt.NDArray[np.bool_]
     place: tuple[str, ...]
 
@@ -95,9 +100,33 @@ class Evidence:
             fuel_flow=self.fuel_flow[index],
             true_airspeed=self.true_airspeed[index],
             rounding=self.rounding[index],
+            spread=self.spread[index],
             flight=self.flight[index],
             place=tuple(self.place[i] for i in index),
         )
+
+
+@dataclass(frozen=True, slots=True)
+class Reading:
+    """Rows that were written in one column of one file and come from one source.
+
+    Parameters
+    ----------
+    file, column : str
+        Where they stand, for messages [-]
+    quantity : str
+        Name of the column without its unit [-]
+    unit : Unit
+        Unit that the column says its numbers are in [-]
+    rows : ndarray of bool
+        Mask of the rows of the evidence [-]
+    """
+
+    file: str
+    column: str
+    quantity: str
+    unit: Unit
+    rows: npt.NDArray[np.bool_]
 
 
 # How far a row may stand from a model that is right, besides the rounding of its last digit.
@@ -126,10 +155,11 @@ def standard_deviations(evidence: Evidence) -> FloatArray:
     Returns
     -------
     ndarray, shape (rows, 3)
-        Rounding (a uniform step) and scatter together, in SI, in the order of `QUANTITIES` [-]
+        Rounding (a uniform step), scatter and spread together, in SI, in the order of
+        `QUANTITIES` [-]
     """
     scatter = np.where(evidence.flight[:, None], _FLIGHT_SCATTER, _HANDBOOK_SCATTER)
-    return np.asarray(np.sqrt(scatter**2 + evidence.rounding**2 / 12.0))
+    return np.asarray(np.sqrt(scatter**2 + evidence.rounding**2 / 12.0 + evidence.spread**2))
 
 
 def assumed_scatter() -> FloatArray:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Collection
 from dataclasses import dataclass
 
 import numpy as np
@@ -10,7 +11,14 @@ import numpy.typing as npt
 from cardgen.fit.estimate import Estimate
 from cardgen.fit.evidence import Evidence, assumed_scatter
 from cardgen.fit.model import Subject, cruise_of_rows
-from cardgen.fit.parameters import PARTS, Part, parameters, prior_covariance, prior_mean
+from cardgen.fit.parameters import (
+    FUEL_SCALE_PREFIX,
+    PARTS,
+    Part,
+    parameters,
+    prior_covariance,
+    prior_mean,
+)
 
 FloatArray = npt.NDArray[np.float64]
 Bounds = tuple[float, float]
@@ -144,7 +152,13 @@ def evidence_range(subject: Subject, evidence: Evidence, *, values: FloatArray) 
     )
 
 
-def carried_over(subject: Subject, record: Knowledge, *, unchanged: tuple[Part, ...]) -> Knowledge:
+def carried_over(
+    subject: Subject,
+    record: Knowledge,
+    *,
+    unchanged: Collection[Part],
+    mixtures: Collection[str] = (),
+) -> Knowledge:
     """What an earlier fit still says after some parts were replaced.
 
     Parameters
@@ -153,8 +167,10 @@ def carried_over(subject: Subject, record: Knowledge, *, unchanged: tuple[Part, 
         The aircraft as it is now [-]
     record : Knowledge
         What was known of the aircraft as it was [-]
-    unchanged : tuple of str
+    unchanged : collection of str
         Parts that are still the same [-]
+    mixtures : collection of str
+        Names of mixtures that are still the same where not all of them are [-]
 
     Returns
     -------
@@ -170,10 +186,11 @@ def carried_over(subject: Subject, record: Knowledge, *, unchanged: tuple[Part, 
     fresh = knowledge_from_profile(subject)
     listed = parameters(subject.mixtures)
     known = {name: place for place, name in enumerate(record.names)}
+    kept_scales = {FUEL_SCALE_PREFIX + name for name in mixtures}
     kept = [
         (here, known[item.name])
         for here, item in enumerate(listed)
-        if item.part in unchanged and item.name in known
+        if item.name in known and (item.part in unchanged or item.name in kept_scales)
     ]
     here = np.array([a for a, _ in kept], dtype=np.intp)
     there = np.array([b for _, b in kept], dtype=np.intp)

@@ -6,7 +6,7 @@ import difflib
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
-from typing import Any, Generic, TypeVar
+from typing import Any, Generic, Literal, TypeVar
 
 from pydantic import ValidationError
 
@@ -57,7 +57,9 @@ class ProfileFile(Generic[FileT]):
             self.problems.append(problem)
 
 
-def parse_file(path: Path, model: type[FileT], *, kind: Kind, shown: str) -> ProfileFile[FileT]:
+def parse_file(
+    path: Path, model: type[FileT], *, kind: Kind | Literal["fit"], shown: str
+) -> ProfileFile[FileT]:
     """Read one file and hold it against the model of its kind.
 
     Parameters
@@ -66,7 +68,7 @@ def parse_file(path: Path, model: type[FileT], *, kind: Kind, shown: str) -> Pro
         The file [-]
     model : type
         The model, `FILES[kind]` [-]
-    kind : {"aircraft", "engine", "propeller"}
+    kind : {"aircraft", "engine", "propeller", "fit"}
         Kind of file expected [-]
     shown : str
         How problems name the file [-]

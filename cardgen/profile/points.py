@@ -55,11 +55,8 @@ COLUMNS: Final[Mapping[str, tuple[Dimension, ...]]] = {
     "weight": ("mass",),
     "mixture": (),
     "source": (),
-    **{
-        f"leg{leg}_{what}": dimensions
-        for leg in range(1, MOST_LEGS + 1)
-        for what, dimensions in (("gs", ("speed",)), ("track", ("angle",)))
-    },
+    **{f"leg{leg}_gs": ("speed",) for leg in range(1, MOST_LEGS + 1)},
+    **{f"leg{leg}_track": ("angle",) for leg in range(1, MOST_LEGS + 1)},
 }
 """Columns by the name without its unit, and what their unit may measure."""
 
@@ -391,7 +388,8 @@ def _airspeed_of_legs(row: Row, legs: Sequence[int]) -> tuple[float, float]:
     if row.has("tas"):
         row.report("tas", "ground legs are given as well", "one of the two")
         return np.nan, 0.0
-    speeds, tracks = [], []
+    speeds: list[float] = []
+    tracks: list[float] = []
     for leg in legs:
         for what, numbers in (("gs", speeds), ("track", tracks)):
             name = f"leg{leg}_{what}"

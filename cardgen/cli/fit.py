@@ -1,0 +1,64 @@
+"""`cardgen fit`: fits a profile to handbook rows and flight points."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import click
+
+
+@click.command()
+@click.argument("profile", type=click.Path(path_type=Path))
+@click.option(
+    "--points",
+    multiple=True,
+    type=click.Path(path_type=str),
+    help="Points file (CSV); may be given several times. Default: the profile's evidence.",
+)
+@click.option(
+    "--out",
+    type=click.Path(path_type=Path),
+    help="Fit file to write. Default: NAME.fit.yaml beside the profile.",
+)
+@click.option(
+    "--accept-suspect",
+    is_flag=True,
+    help="Write the fit file although a column looks like another unit than its name says.",
+)
+@click.option("--json", "as_json", is_flag=True, help="Print JSON and nothing else.")
+def fit(
+    profile: Path,
+    points: tuple[str, ...],
+    out: Path | None,
+    accept_suspect: bool,
+    as_json: bool,
+) -> int:
+    """Fit PROFILE to handbook rows and flight points, and say how well it went.
+
+    \b
+    Examples:
+      cardgen fit profiles/aircraft/specimen.yaml
+      cardgen fit profiles/aircraft/specimen.yaml --points flights.csv --out new.fit.yaml
+    """
+    from cardgen.errors import UsageError  # noqa: PLC0415
+    from cardgen.profile import load_profile  # noqa: PLC0415
+    from cardgen.profile.fit_file import fit_path, fit_text, read_fit  # noqa: PLC0415
+    from cardgen.profile.fitting import fit_points, record_of, start_of  # noqa: PLC0415
+    from cardgen.profile.points import read_points  # noqa: PLC0415
+    from cardgen.render.files import write_whole  # noqa: PLC0415
+
+    read = load_profile(profile)
+    paths = points or tuple(str(path) for path in read.evidence)
+    if not paths:
+        raise UsageError(
+            f"{profile}: nothing to fit to; give --points FILE, or list files under the profile's "
+            "key evidence"
+        )
+    target = out or fit_path(read)
+    given = read_points(read, paths)
+    start = start_of(read, given, record=read_fit(target, read) if target.exists() else None)
+    found = fit_points(read, given, start)
+    record = record_of(read, given, start, found=found, warnings=start.notes)
+    write_whole(target, fit_text(record).encode())
+    click.echo(f"Written: {target}")
+    return 0
