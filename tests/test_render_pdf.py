@@ -9,6 +9,7 @@ import subprocess
 import sys
 from dataclasses import replace
 from io import BytesIO
+from typing import Any
 
 import numpy as np
 import pytest
@@ -19,12 +20,13 @@ from reportlab.pdfbase.ttfonts import TTFont
 
 from cardgen.errors import ReleaseError, UsageError
 from cardgen.render.edition import Edition
+from cardgen.render.finishing import finish
 from cardgen.render.fonts import FACES, printable, width, wrap
 from cardgen.render.paper import PAPERS, find_paper
 from cardgen.render.readback import read_back
-from cardgen.render.typeset import typeset
-from cardgen.render.words import page_texts
-from cardgen.tables.card import Card, CellState
+from cardgen.render.typesetting import typeset
+from cardgen.render.words import page_texts, read_words
+from cardgen.tables.card import Card, CellState, Reason
 
 RANDOM_CARDS = int(os.environ.get("CARDGEN_RANDOM_CARDS", "12"))
 
@@ -47,7 +49,8 @@ def random_sketch(seed: int) -> Sketch:
 
 
 def edition_of(sketch: Sketch, *, issue: int = 2, replaces: int | None = 1) -> Edition:
-    return Edition(make_card(sketch), make_identity(long=sketch.long), issue, replaces)
+    identity = replace(make_identity(long=sketch.long), demo=sketch.stamps)
+    return Edition(make_card(sketch), identity, issue, replaces)
 
 
 def pdf_of(edition: Edition, *, paper: str | None = None, compress: bool = True) -> bytes:
@@ -213,10 +216,74 @@ def test_legend_explains_only_marks_that_occur() -> None:
         assert word not in text
 
 
-def test_value_cell_without_a_number_is_not_typeset() -> None:
-    card = with_cell(make_card(Sketch()), (0, 0, 0), state=CellState.VALUE, fuel_flow=np.nan)
-    with pytest.raises(ReleaseError, match="nan"):
+@pytest.mark.parametrize(
+    ("cell", "words"),
+    [
+        ({"state": CellState.VALUE, "fuel_flow": np.nan}, "holds none"),
+        ({"state": CellState.FORBIDDEN, "reason": -1}, "without a reason"),
+        ({"state": CellState.FORBIDDEN, "reason": 7}, "without a reason"),
+        ({"state": 9}, "no known state"),
+    ],
+)
+def test_cell_that_contradicts_itself_is_not_typeset(cell: dict[str, float], words: str) -> None:
+    card = with_cell(make_card(Sketch()), (0, 0, 0), **cell)
+    with pytest.raises(ReleaseError, match=words):
         typeset(card, make_identity(), issue=1)
+
+
+@pytest.mark.parametrize(
+    ("change", "words"),
+    [
+        ({"percent_of": " "}, "percent power"),
+        ({"digest": "abc"}, "digest"),
+        ({"tables": ()}, "no table"),
+        ({"reasons": (Reason("A", "one", ""), Reason("A", "two", ""))}, "share a letter"),
+        ({"reasons": (Reason("7", "one", ""), Reason("B", "two", ""))}, "than a letter"),
+    ],
+)
+def test_card_without_its_marking_is_not_typeset(change: dict[str, Any], words: str) -> None:
+    with pytest.raises(ReleaseError, match=words):
+        typeset(replace(make_card(Sketch()), **change), make_identity(), issue=1)
+
+
+@pytest.mark.parametrize("field", ["registration", "date"])
+def test_card_of_nobody_or_of_no_date_is_not_typeset(field: str) -> None:
+    with pytest.raises(ReleaseError, match=field):
+        typeset(make_card(Sketch()), replace(make_identity(), **{field: ""}), issue=1)
+
+
+def test_stamps_cannot_be_switched_off() -> None:
+    card = replace(make_card(Sketch(fitted=False)), stamps=())
+    for text in page_texts(typeset(card, make_identity(), issue=1)):
+        assert "DEMONSTRATION DATA, NOT FOR FLIGHT" in text
+        assert "NOT FITTED: PLANNING ESTIMATE ONLY" in text
+
+
+def test_long_registration_stays_within_the_page() -> None:
+    edition = edition_of(Sketch())
+    for length in (12, 24, 60):
+        identity = replace(edition.identity, registration="Z" * length)
+        long = replace(edition, identity=identity)
+        for paper in PAPERS:
+            pdf = pdf_of(long, paper=paper)
+            read_back(pdf, long)
+            for page in read_words(pdf):
+                assert len({(word.x, word.y) for word in page}) == len(page)
+
+
+def test_finished_files_are_read_back_before_they_are_returned(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    edition = edition_of(Sketch())
+    files = finish(edition, formats=("pdf", "html", "csv", "json"))
+    assert list(files) == ["pdf", "html", "csv", "json"]
+    other = with_cell(edition.card, (1, 0, 2), manifold_pressure=11.1)
+    wrong = pdf_of(replace(edition, card=other))
+    monkeypatch.setattr("cardgen.render.finishing.typeset", lambda *_, **__: wrong)
+    with pytest.raises(ReleaseError, match="read-back"):
+        finish(edition)
+    with pytest.raises(UsageError, match="pdf, html, csv, json"):
+        finish(edition, formats=("docx",))
 
 
 def test_number_that_was_not_rounded_before_does_not_pass_read_back() -> None:
@@ -238,7 +305,11 @@ def test_wrong_marking_is_caught(field: str) -> None:
         "issue": replace(edition, issue=3),
         "replaces": replace(edition, replaces=None),
         "digest": replace(edition, card=replace(edition.card, digest="0" * 64)),
-        "stamps": replace(edition, card=replace(edition.card, stamps=())),
+        "stamps": replace(
+            edition,
+            identity=replace(edition.identity, demo=False),
+            card=replace(edition.card, stamps=()),
+        ),
     }[field]
     with pytest.raises(ReleaseError, match="does not say"):
         read_back(pdf_of(wrong), edition)
@@ -322,7 +393,7 @@ def test_wrapping_loses_no_word_and_keeps_to_the_measure() -> None:
 
 def test_importing_the_package_loads_no_pdf_library() -> None:
     code = (
-        "import sys, cardgen.render.typeset, cardgen.render.readback, cardgen.render.html\n"
+        "import sys, cardgen.render.typesetting, cardgen.render.readback, cardgen.render.html\n"
         "print([m for m in ('reportlab', 'pypdf') if m in sys.modules])"
     )
     env = os.environ | {"PYTHONPATH": os.pathsep.join(sys.path)}

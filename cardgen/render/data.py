@@ -18,6 +18,7 @@ from cardgen.render.wording import (
     number,
     reason_letter,
     shows_temperature,
+    stamps,
     tolerance_text,
 )
 from cardgen.tables.card import Card, CardTable, CellState
@@ -166,7 +167,7 @@ def to_json(edition: Edition) -> bytes:
     card, identity = edition.card, edition.identity
     document = {
         "notice": SUPPLEMENTARY,
-        "stamps": list(card.stamps),
+        "stamps": list(stamps(card, identity)),
         "registration": identity.registration,
         "aircraft_type": identity.aircraft_type,
         "engine": {"model": identity.engine.model, "serial": identity.engine.serial},

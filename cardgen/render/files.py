@@ -18,7 +18,7 @@ except ImportError:  # a platform without advisory locks: two runs at once are o
     fcntl = None  # type: ignore[assignment]
 
 LOCK_NAME: Final = ".issues.lock"
-_POLL: Final = 0.05  # between two tries for the lock [s]
+_POLL: Final = 0.01  # between two tries for the lock [s]
 
 _MEANINGS: Final[dict[int, str]] = {
     errno.ENOSPC: "the disk is full; free some room and run again",

@@ -22,6 +22,7 @@ PARTS: Final = (
     "card",
     "fit",
     "model",
+    "identity",
 )
 """What can replace a card, in the order it is told."""
 
@@ -31,8 +32,8 @@ class Issue:
     """One issue of one card.
 
     `digest` is of the profile, `content` of the printed numbers, `parts` of each part of the
-    profile, `files` (suffix to SHA-256) of what was written. A `reserved` issue has its number
-    but perhaps not all its files; a `released` one has.
+    profile, `files` (suffix to SHA-256) of what was written, `program` of the program that made
+    them. A `reserved` issue has its number but perhaps not all its files; a `released` one has.
     """
 
     number: int
@@ -42,6 +43,7 @@ class Issue:
     replaces: int | None
     files: dict[str, str]
     state: Literal["reserved", "released"]
+    program: str = ""
 
 
 History = dict[str, tuple[Issue, ...]]  # card name -> its issues, oldest first

@@ -26,6 +26,7 @@ from cardgen.render.wording import (
     percent,
     shows_temperature,
     sign,
+    stamps,
     temperature_label,
     tolerance_text,
     units_text,
@@ -64,9 +65,11 @@ def to_html(edition: Edition) -> bytes:
     """
     card, identity = edition.card, edition.identity
     registration = escape(identity.registration)
-    stamps = "".join(f"<p>{escape(stamp)}</p>" for stamp in card.stamps)
+    stamped = "".join(f"<p>{escape(stamp)}</p>" for stamp in stamps(card, identity))
     tables = "\n".join(_table(edition, table) for table in card.tables)
-    held = " ".join((*card.stamps, ""))  # stays in sight with the line that says what governs
+    held = " ".join(
+        (*stamps(card, identity), "")
+    )  # stays in sight with the line that says what governs
     notes = "\n".join(
         f"<h2>{escape(section.title)}</h2>\n<ul>"
         + "".join(f"<li>{escape(line)}</li>" for line in section.lines)
@@ -102,7 +105,7 @@ def to_html(edition: Edition) -> bytes:
 <header>
 <h1>{registration}</h1>
 <p><strong>{escape(issue_text(identity, edition.issue))}</strong></p>
-{f'<div class="stamps">{stamps}</div>' if stamps else ""}
+{f'<div class="stamps">{stamped}</div>' if stamped else ""}
 <p>{escape(configuration(identity))}</p>
 <p class="light"><label for="auto">Device</label> <label for="day">Day</label>
 <label for="night">Night</label></p>
@@ -115,7 +118,7 @@ def to_html(edition: Edition) -> bytes:
 </footer>
 {notes}
 </main>
-<div class="governs">{f'<p class="held">{escape(held.strip())}</p>' if held else ""}
+<div class="governs">{f'<p class="held">{escape(held)}</p>' if held else ""}
 <p>{escape(SUPPLEMENTARY)}</p></div>
 </div>
 <script>

@@ -28,6 +28,7 @@ from cardgen.render.wording import (
     note_sections,
     percent,
     shows_temperature,
+    stamps,
     tolerance_text,
     units_text,
 )
@@ -113,7 +114,7 @@ def read_back_html(page: bytes, edition: Edition) -> None:
         identity.registration,
         issue_text(identity, edition.issue),
         configuration(identity),
-        *card.stamps,
+        *stamps(card, identity),
         card.percent_of,
         units_text(card),
         tolerance_text(card, card.tables, where=WHERE),

@@ -16,6 +16,7 @@ from cardgen.render.wording import (
     digest_text,
     issue_text,
     page_text,
+    stamps,
     tolerance_text,
     units_text,
 )
@@ -34,7 +35,7 @@ Line = tuple[str, Face, float]
 class Marking:
     """Head and foot of one page, broken into lines for a measure [pt]."""
 
-    registration: str
+    registration: tuple[str, ...]
     corner: tuple[str, str]  # issue and date; page n of m
     corner_below: bool  # a long registration leaves no room beside it
     stamps: tuple[str, ...]
@@ -46,7 +47,8 @@ class Marking:
     @property
     def head_height(self) -> float:
         """Height of everything above the tables [pt]."""
-        height = LEADING * REGISTRATION_SIZE + (LEADING * NOTE if self.corner_below else 0.0)
+        height = LEADING * REGISTRATION_SIZE * len(self.registration)
+        height += LEADING * NOTE if self.corner_below else 0.0
         height += LEADING * NOTE * len(self.configuration)
         if self.stamps:
             height += LEADING * STAMP_SIZE * len(self.stamps) + 2.0 * _PAD + 4.0
@@ -90,16 +92,16 @@ def mark_page(
     def lines(text: str, face: Face = "regular", size: float = NOTE) -> tuple[str, ...]:
         return wrap(text, face, size=size, measure=measure)
 
-    registration = printable(identity.registration)
+    registration = lines(identity.registration, "bold", REGISTRATION_SIZE)
     corner = (printable(issue_text(identity, edition.issue)), page_text(page, pages))
-    taken = width(registration, "bold", REGISTRATION_SIZE) + _corner_width(corner)
+    taken = width(registration[-1], "bold", REGISTRATION_SIZE) + _corner_width(corner)
     return Marking(
         registration=registration,
         corner=corner,
         corner_below=taken + _CORNER_GAP > measure,
         stamps=tuple(
             line
-            for stamp in card.stamps
+            for stamp in stamps(card, identity)
             for line in wrap(stamp, "bold", size=STAMP_SIZE, measure=measure - 4.0 * _PAD)
         ),
         configuration=lines(configuration(identity)),
@@ -135,7 +137,11 @@ def place_head(marking: Marking, *, x: float, top: float, measure: float) -> tup
         Boxes in reading order [-]
     """
     y = top - CAP_HEIGHT * REGISTRATION_SIZE
-    boxes: list[Box] = [Run(x, y, marking.registration, "bold", REGISTRATION_SIZE)]
+    boxes: list[Box] = []
+    for line in marking.registration:
+        boxes.append(Run(x, y, line, "bold", REGISTRATION_SIZE))
+        y -= LEADING * REGISTRATION_SIZE
+    y += LEADING * REGISTRATION_SIZE
     line_y = y - LEADING * NOTE if marking.corner_below else y
     issue, page = marking.corner
     end = x + measure

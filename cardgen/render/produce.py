@@ -48,7 +48,7 @@ def produce(
         match name:
             case "pdf":
                 from cardgen.render.readback import read_back  # noqa: PLC0415 - loads pypdf
-                from cardgen.render.typeset import typeset  # noqa: PLC0415
+                from cardgen.render.typesetting import typeset  # noqa: PLC0415
 
                 files[name] = typeset(card, identity, issue=issue, replaces=replaces)
                 read_back(files[name], edition)

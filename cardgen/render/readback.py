@@ -40,6 +40,7 @@ from cardgen.render.wording import (
     percent,
     shows_temperature,
     sign,
+    stamps,
     temperature_label,
     tolerance_text,
     units_text,
@@ -135,7 +136,7 @@ def _check_marking(
         [
             identity.registration,
             configuration(identity),
-            *card.stamps,
+            *stamps(card, identity),
             card.percent_of,
             units_text(card),
             tolerance_text(card, tables),

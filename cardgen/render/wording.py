@@ -12,6 +12,8 @@ from cardgen.tables.card import Card, CardTable, CellState, Section
 from cardgen.units import to_unit
 
 SUPPLEMENTARY: Final = "SUPPLEMENTARY. The approved flight manual, placards and markings govern."
+DEMONSTRATION: Final = "DEMONSTRATION DATA, NOT FOR FLIGHT"
+NOT_FITTED: Final = "NOT FITTED: PLANNING ESTIMATE ONLY"
 DIGEST_DIGITS: Final = 12
 FULL_THROTTLE: Final = "FT"
 OUT_OF_REACH: Final = "\N{EM DASH}"
@@ -188,6 +190,30 @@ def legend(card: Card, states: Iterable[tuple[CellState, int]]) -> tuple[tuple[s
             (OUTSIDE_EVIDENCE, "Outside the evidence: nothing measured or approved near it.")
         )
     return tuple(lines)
+
+
+def stamps(card: Card, identity: Identity) -> tuple[str, ...]:
+    """Return what is stamped on every page.
+
+    Parameters
+    ----------
+    card : Card
+        The card with the stamps it asks for [-]
+    identity : Identity
+        Whose card it is [-]
+
+    Returns
+    -------
+    tuple of str
+        Its stamps, and in any case that data are invented or a model was never fitted [-]
+    """
+    asked = card.stamps
+    said = " ".join(asked).casefold()
+    if identity.demo and "demonstration" not in said:
+        asked = (DEMONSTRATION, *asked)
+    if any(table.tolerance is None for table in card.tables) and "not fitted" not in said:
+        asked = (*asked, NOT_FITTED)
+    return asked
 
 
 def part_text(kind: str, part: PartIdentity) -> str:
