@@ -119,7 +119,8 @@ class Engine:
         rpm, over it [-]
     friction_scale : float or ndarray
         Friction that does not depend on load, over the Barnes-Moss line; with 0.3 full throttle
-        follows Gagg and Farrar within 0.5 % of rated power to 25 000 ft [-]
+        follows Gagg and Farrar within 1.2 % of rated power to 25 000 ft, for ratings of 0.45 to
+        0.6 hp per cubic inch [-]
     back_pressure_effect : float or ndarray
         Effect of exhaust back pressure on charge and pumping, over theory's [-]
     charge_temperature_exponent : float or ndarray
