@@ -10,7 +10,7 @@ from pathlib import Path
 from typing import Final
 
 from cardgen.errors import Problem, QuantityError
-from cardgen.profile.reading import read_text
+from cardgen.profile.reading import LARGEST_FILE, read_text
 from cardgen.profile.values import shown as shown_value
 from cardgen.units import Dimension, Unit, split_suffix
 
@@ -167,7 +167,14 @@ class Row:
         return 10.0 ** -len(decimals) * (column.unit.factor if column.unit else 1.0)
 
 
-def read_sheet(path: Path, known: Mapping[str, Sequence[Dimension] | None], *, shown: str) -> Sheet:
+def read_sheet(
+    path: Path,
+    known: Mapping[str, Sequence[Dimension] | None],
+    *,
+    shown: str,
+    most_rows: int = MOST_ROWS,
+    largest: int = LARGEST_FILE,
+) -> Sheet:
     """Read a comma-separated file whose first line names the columns.
 
     Parameters
@@ -179,6 +186,10 @@ def read_sheet(path: Path, known: Mapping[str, Sequence[Dimension] | None], *, s
         numbers that are written without a unit [-]
     shown : str
         How problems name the file [-]
+    most_rows : int
+        Rows beyond which the file is refused [-]
+    largest : int
+        Size beyond which it is [bytes]
 
     Returns
     -------
@@ -186,7 +197,7 @@ def read_sheet(path: Path, known: Mapping[str, Sequence[Dimension] | None], *, s
         Columns, rows and problems; lines that begin with # and empty lines are passed over [-]
     """
     sheet = Sheet(shown)
-    text = read_text(path, shown=shown, kind="a CSV file")
+    text = read_text(path, shown=shown, kind="a CSV file", largest=largest)
     if isinstance(text, Problem):
         sheet.problems.append(text)
         return sheet
@@ -216,8 +227,8 @@ def read_sheet(path: Path, known: Mapping[str, Sequence[Dimension] | None], *, s
                 f"the row has {len(cells)} cells",
                 f"{len(sheet.columns)}, as the header has",
             )
-        elif len(sheet.rows) >= MOST_ROWS:
-            sheet.report(line, 1, "", f"more than {MOST_ROWS} rows", "several smaller files")
+        elif len(sheet.rows) >= most_rows:
+            sheet.report(line, 1, "", f"more than {most_rows} rows", "several smaller files")
             break
         else:
             sheet.rows.append((line, cells))
@@ -230,6 +241,13 @@ def read_sheet(path: Path, known: Mapping[str, Sequence[Dimension] | None], *, s
 
 def _split(sheet: Sheet, line: int, content: str) -> tuple[Cell, ...] | None:
     """Return the cells of a line."""
+    if '"' not in content:
+        # Nearly every line: the same cells as below, in a fraction of the time.
+        unquoted, begin = [], 0
+        for text in content.split(","):
+            unquoted.append(Cell(text.strip(), begin + len(text) - len(text.lstrip()) + 1))
+            begin += len(text) + 1
+        return tuple(unquoted)
     cells, place = [], 0
     while True:
         match = _CELL.match(content, place)

@@ -174,7 +174,7 @@ def read_tree(text: str, *, shown: str) -> Document:
     return Document(root, tuple(builder.problems))
 
 
-def read_text(path: Path, *, shown: str, kind: str) -> str | Problem:
+def read_text(path: Path, *, shown: str, kind: str, largest: int = LARGEST_FILE) -> str | Problem:
     """Read the text of a file of sane size, kind and encoding.
 
     Parameters
@@ -185,6 +185,8 @@ def read_text(path: Path, *, shown: str, kind: str) -> str | Problem:
         How the problem names it [-]
     kind : str
         What kind of file is expected, with its article [-]
+    largest : int
+        Size beyond which it is refused [bytes]
 
     Returns
     -------
@@ -192,12 +194,12 @@ def read_text(path: Path, *, shown: str, kind: str) -> str | Problem:
         The text, or why it cannot be read [-]
     """
     try:
-        return _read_text(path, kind=kind)
+        return _read_text(path, kind=kind, largest=largest)
     except _UnreadableError as error:
         return error.problem(shown)
 
 
-def _read_text(path: Path, *, kind: str = "a YAML file") -> str:
+def _read_text(path: Path, *, kind: str = "a YAML file", largest: int = LARGEST_FILE) -> str:
     """Return the text of a file of sane size, kind and encoding."""
     try:
         status = path.stat()
@@ -206,7 +208,7 @@ def _read_text(path: Path, *, kind: str = "a YAML file") -> str:
         if not stat.S_ISREG(status.st_mode):
             raise _UnreadableError(_WHOLE_FILE, "is not a regular file", kind)
         with path.open("rb") as stream:
-            data = stream.read(LARGEST_FILE + 1)
+            data = stream.read(largest + 1)
     except FileNotFoundError:
         raise _UnreadableError(
             _WHOLE_FILE, "does not exist", kind.replace("a ", "an existing ", 1)
@@ -216,9 +218,11 @@ def _read_text(path: Path, *, kind: str = "a YAML file") -> str:
     except OSError as error:
         reason = (error.strerror or "unknown error").lower()
         raise _UnreadableError(_WHOLE_FILE, f"cannot be read: {reason}") from None
-    if len(data) > LARGEST_FILE:
+    if len(data) > largest:
         raise _UnreadableError(
-            _WHOLE_FILE, f"is larger than {LARGEST_FILE} bytes", "a file of at most 1 MB"
+            _WHOLE_FILE,
+            f"is larger than {largest} bytes",
+            f"a file of at most {largest // 1_000_000} MB",
         )
     try:
         return data.decode("utf-8-sig")

@@ -1,8 +1,8 @@
 """The content of one aircraft's card, computed.
 
-A printed cell is a setting that a pilot can make: manifold pressure is rounded to the printed step
-first, and fuel flow, airspeed and every verdict are those of the rounded setting, so that the card
-and a check of what it prints cannot disagree.
+Fuel flow and airspeed are those of the asked power, rounded to the safe side. Verdicts are those of
+the *printed* setting: manifold pressure is rounded to what a gauge can be set to first, so that the
+card and a check of what it prints cannot disagree.
 """
 
 from __future__ import annotations
@@ -68,7 +68,6 @@ class _Block:
     """All tables of one mixture; arrays have shape (mass, power, altitude, temperature, rpm)."""
 
     mixture: int
-    full_throttle: BoolArray
     solution: Solution
     findings: Findings
     pressure: FloatArray  # printed
@@ -144,47 +143,44 @@ def _block(model: Model, choices: CardChoices, mixture: int) -> _Block:
     # At full throttle the lever is against its stop; what the gauge then reads is information.
     nearest = np.where(full, rounded_down(reads, places), rounded(reads, places))
     other = np.where(nearest > reads, rounded_down(reads, places), rounded_up(reads, places))
-    first = _at(model, situation, rpm, exact=exact, printed=nearest, unit=unit)
-    second = _at(model, situation, rpm, exact=exact, printed=other, unit=unit)
+    findings = _judged(model, situation, exact=exact, printed=nearest, unit=unit)
+    apart = _judged(model, situation, exact=exact, printed=other, unit=unit)
     # Near a limit the step away from it is taken, if that is allowed.
-    swap = ~full & (first[1].verdict == Verdict.OUTSIDE) & (second[1].verdict != Verdict.OUTSIDE)
+    swap = ~full & (findings.verdict == Verdict.OUTSIDE) & (apart.verdict != Verdict.OUTSIDE)
     if swap.any():
         nearest = np.where(swap, other, nearest)
-        first = _at(model, situation, rpm, exact=exact, printed=nearest, unit=unit)
+        findings = _judged(model, situation, exact=exact, printed=nearest, unit=unit)
     tolerance = exact.tolerance
     return _Block(
         mixture=mixture,
-        full_throttle=full,
-        solution=first[0],
-        findings=first[1],
+        solution=exact,
+        findings=findings,
         pressure=nearest,
         tolerance=(tolerance.manifold_pressure, tolerance.fuel_flow, tolerance.true_airspeed),
     )
 
 
-def _at(
-    model: Model,
-    situation: Situation,
-    rpm: FloatArray,
-    *,
-    exact: Solution,
-    printed: FloatArray,
-    unit: str,
-) -> tuple[Solution, Findings]:
-    """Solution and findings at printed manifold pressures, at full throttle where that is it."""
+def _judged(
+    model: Model, situation: Situation, *, exact: Solution, printed: FloatArray, unit: str
+) -> Findings:
+    """Findings at printed manifold pressures, at full throttle where that is it."""
     full = exact.point.full_throttle
     asked = np.where(full, exact.indicated_manifold_pressure, pressure_from(printed, unit))
     solution = solve(
-        model, situation, indicated_rpm=rpm, indicated_pressure=asked, with_tolerance=False
+        model,
+        situation,
+        indicated_rpm=exact.indicated_rpm,
+        indicated_pressure=asked,
+        with_tolerance=False,
     )
-    return solution, judge(model, solution)
+    return judge(model, solution)
 
 
 def _states(block: _Block, barred: BoolArray) -> npt.NDArray[np.int8]:
     """State of every cell; a broken limit wins over everything else."""
     point = block.solution.point
     state = np.full(point.power.shape, CellState.VALUE, dtype=np.int8)
-    state[block.full_throttle] = CellState.FULL_THROTTLE
+    state[block.solution.point.full_throttle] = CellState.FULL_THROTTLE
     for judgement in block.findings.judgements:
         if judgement.limit == "evidence":
             beyond = np.broadcast_to(judgement.verdict != Verdict.INSIDE, state.shape)
@@ -292,15 +288,8 @@ def _temperature_notes(
             power_fraction=np.array(choices.power_fraction)[:, None, None, None],
             with_tolerance=False,
         )
-        still = block.solution
-        both = ~block.full_throttle & ~moved.point.full_throttle
-        exact = solve(
-            model,
-            still.situation,
-            indicated_rpm=np.array(choices.rpm),
-            power_fraction=np.array(choices.power_fraction)[:, None, None, None],
-            with_tolerance=False,
-        )
+        exact = block.solution
+        both = ~exact.point.full_throttle & ~moved.point.full_throttle
         changes = (
             to_unit(
                 moved.indicated_manifold_pressure - exact.indicated_manifold_pressure,
