@@ -20,13 +20,15 @@ from reportlab.pdfbase.ttfonts import TTFont
 
 from cardgen.errors import ReleaseError, UsageError
 from cardgen.render.edition import Edition
-from cardgen.render.finishing import finish
 from cardgen.render.fonts import FACES, printable, width, wrap
+from cardgen.render.html import to_html
+from cardgen.render.html_readback import read_back_html
 from cardgen.render.paper import PAPERS, find_paper
+from cardgen.render.produce import produce
 from cardgen.render.readback import read_back
 from cardgen.render.typesetting import typeset
 from cardgen.render.words import page_texts, read_words
-from cardgen.tables.card import Card, CellState, Reason
+from cardgen.tables.card import Card, CellState, Reason, Section
 
 RANDOM_CARDS = int(os.environ.get("CARDGEN_RANDOM_CARDS", "12"))
 
@@ -275,15 +277,19 @@ def test_finished_files_are_read_back_before_they_are_returned(
     monkeypatch: pytest.MonkeyPatch,
 ) -> None:
     edition = edition_of(Sketch())
-    files = finish(edition, formats=("pdf", "html", "csv", "json"))
-    assert list(files) == ["pdf", "html", "csv", "json"]
-    other = with_cell(edition.card, (1, 0, 2), manifold_pressure=11.1)
-    wrong = pdf_of(replace(edition, card=other))
-    monkeypatch.setattr("cardgen.render.finishing.typeset", lambda *_, **__: wrong)
-    with pytest.raises(ReleaseError, match="read-back"):
-        finish(edition)
-    with pytest.raises(UsageError, match="pdf, html, csv, json"):
-        finish(edition, formats=("docx",))
+    formats = ("pdf", "html", "csv", "json")
+
+    def produced(*formats: str) -> dict[str, bytes]:
+        return produce(edition.card, edition.identity, issue=2, replaces=1, formats=formats)
+
+    assert list(produced(*formats)) == list(formats)
+    other = replace(edition, card=with_cell(edition.card, (1, 0, 2), manifold_pressure=11.1))
+    wrong_pdf, wrong_html = pdf_of(other), to_html(other)
+    monkeypatch.setattr("cardgen.render.typesetting.typeset", lambda *_, **__: wrong_pdf)
+    monkeypatch.setattr("cardgen.render.html.to_html", lambda _: wrong_html)
+    for name in ("pdf", "html"):
+        with pytest.raises(ReleaseError, match="read-back"):
+            produced(name)
 
 
 def test_number_that_was_not_rounded_before_does_not_pass_read_back() -> None:
@@ -326,6 +332,16 @@ def test_missing_page_is_caught() -> None:
     writer.write(short)
     with pytest.raises(ReleaseError):
         read_back(short.getvalue(), edition)
+
+
+def test_wording_that_looks_like_part_of_a_table_does_not_confuse_read_back() -> None:
+    card = make_card(Sketch(altitudes=12, rpm=6, reasons=2))
+    first = replace(card.reasons[0], text="Continued operation barred from 2000 to 2250\nrpm")
+    words = Section("rpm", ("rpm", "2100", "Continued on and off", "65 %", "DA ft", "0", "FT"))
+    odd = replace(card, reasons=(first, card.reasons[1]), sections=(words,), notes=("rpm 2100",))
+    edition = Edition(odd, make_identity(), 1)
+    read_back(pdf_of(edition), edition)
+    read_back_html(to_html(edition), edition)
 
 
 def test_file_that_is_no_pdf_is_refused() -> None:

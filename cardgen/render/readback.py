@@ -7,6 +7,7 @@ if it has the value of its cell, stands under the rpm of its column and beside i
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -48,6 +49,7 @@ from cardgen.render.wording import (
 from cardgen.render.words import Word, read_words
 from cardgen.tables.card import Card, CardTable
 
+_CONTINUED = re.compile(r"Continued (from|on) page [0-9]+\.")
 _EDGE = 1.0  # slack when asking on which side of a column's edge a word starts [pt]
 
 
@@ -158,7 +160,7 @@ def _check_continued(pages: Sequence[Sequence[Word]], spans: Sequence[Sequence[i
             expected.append(continued_text(before, after))
         if not expected and page < len(pages):  # a page of notes that is not the last
             expected.append(continued_text(None, page + 1))
-        found = [word.text for word in pages[page - 1] if word.text.startswith("Continued ")]
+        found = [word.text for word in pages[page - 1] if _CONTINUED.match(word.text)]
         if found != [text for text in expected if text]:
             raise ReleaseError(f"read-back: page {page} says {found} for where it goes on")
 
