@@ -1,0 +1,5 @@
+"""`python -m cardgen`."""
+
+from cardgen.cli.main import main
+
+main()
