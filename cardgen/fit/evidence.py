@@ -168,6 +168,6 @@ def assumed_scatter() -> FloatArray:
     Returns
     -------
     ndarray, shape (3,)
-        Standard deviations, SI, in the order of `QUANTITIES`
+        Standard deviations, in the order of `QUANTITIES` [SI]
     """
     return np.array(_FLIGHT_SCATTER)

@@ -182,6 +182,9 @@ def carried_over(
     -----
     Between an unchanged group and a replaced one no covariance is left: what was found of the old
     part says nothing of the new one, and what is kept is the marginal of the unchanged groups.
+
+    Scatter is never less than what is assumed of flights: the rows of a handbook are smoothed, and
+    how far they lie from a smooth model says little of how far this aircraft lies from them.
     """
     fresh = knowledge_from_profile(subject)
     listed = parameters(subject.mixtures)

@@ -63,7 +63,7 @@ def predict(subject: Subject, evidence: Evidence, *, values: FloatArray) -> Floa
     Returns
     -------
     ndarray, shape (n, 3) or (k, n, 3)
-        In the order of `cardgen.fit.evidence.QUANTITIES`, SI; NaN where the model has no answer
+        In the order of `cardgen.fit.evidence.QUANTITIES`; NaN where the model has no answer [SI]
 
     Notes
     -----
