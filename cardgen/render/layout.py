@@ -75,12 +75,12 @@ def lay_out(edition: Edition, paper: Paper) -> tuple[Page, ...]:
         Not even one row with its explanations fits the paper at the least sizes.
     """
     room = _Room(paper)
-    style, plan = _plan(edition, room)
+    styles, plan = _plan(edition, room)
     sections = note_sections(edition.card, edition.identity)
     notes = share_out(sections, measure=room.measure, height=_room_for_notes(edition, room))
     pages = len(plan) + len(notes)
     placed = [
-        _table_page(edition, room, style, plan, index=k, pages=pages) for k in range(len(plan))
+        _table_page(edition, room, styles[k], plan, index=k, pages=pages) for k in range(len(plan))
     ]
     for k, lines in enumerate(notes):
         placed.append(_notes_page(edition, room, lines, page=len(plan) + k + 1, pages=pages))
@@ -92,23 +92,43 @@ def lay_out(edition: Edition, paper: Paper) -> tuple[Page, ...]:
 Plan = tuple[tuple[Part, ...], ...]  # the parts on each page
 
 
-def _plan(edition: Edition, room: _Room) -> tuple[Style, Plan]:
-    """Return the style and the pages: fewest pages first, then the largest type.
+def _plan(edition: Edition, room: _Room) -> tuple[tuple[Style, ...], Plan]:
+    """Return the pages and the style of each: fewest pages first, then the largest type.
 
-    One style serves the whole card, so that a number means the same at a glance on every page.
+    Numbers stand in one arrangement through the whole card, and a table has one size wherever
+    it goes on.
     """
-    least = [_paginate(edition, room, Style(LEAST_SETTING, stacked)) for stacked in (False, True)]
-    fewest = min((len(plan) for plan in least if plan is not None), default=0)
-    for setting in SETTING_SIZES:
-        for stacked in (False, True):
-            style = Style(setting, stacked)
-            plan = _paginate(edition, room, style)
-            if plan is not None and len(plan) == fewest:
-                return style, plan
-    raise ReleaseError(
-        f"one row of a table with its explanations does not fit {room.paper.name} at the least"
-        " sizes of type; choose a larger paper or shorten the wording of the limits"
-    )
+    choices: list[tuple[tuple[float, float], tuple[Style, ...], Plan]] = []
+    plans = {
+        stacked: _paginate(edition, room, Style(LEAST_SETTING, stacked))
+        for stacked in (False, True)
+    }
+    fewest = min((len(plan) for plan in plans.values() if plan is not None), default=0)
+    for stacked, plan in plans.items():
+        if plan is None or len(plan) > fewest:
+            continue
+        styles = _grown(edition, room, plan, stacked=stacked)
+        sizes = [style.setting for style in styles]
+        choices.append(((min(sizes), sum(sizes)), styles, plan))
+    if not choices:
+        raise ReleaseError(
+            f"one row of a table with its explanations does not fit {room.paper.name} at the least"
+            " sizes of type; choose a larger paper or shorten the wording of the limits"
+        )
+    _, styles, plan = max(choices, key=lambda choice: choice[0])
+    return styles, plan
+
+
+def _grown(edition: Edition, room: _Room, plan: Plan, *, stacked: bool) -> tuple[Style, ...]:
+    """Return the largest style for each page, the same on all pages of one table."""
+    sizes: dict[tuple[int, ...], float] = {}
+    tables = [tuple(part.table for part in parts) for parts in plan]
+    for key, parts in zip(tables, plan, strict=True):
+        size = next(
+            size for size in SETTING_SIZES if _fits(edition, room, Style(size, stacked), parts)
+        )
+        sizes[key] = min(size, sizes.get(key, size))
+    return tuple(Style(sizes[key], stacked) for key in tables)
 
 
 def _paginate(edition: Edition, room: _Room, style: Style) -> Plan | None:

@@ -174,7 +174,8 @@ def legend(card: Card, states: Iterable[tuple[CellState, int]]) -> tuple[tuple[s
     for index, reason in enumerate(card.reasons):
         if (CellState.FORBIDDEN, index) in occurring:
             source = f" Source: {reason.source}" if reason.source else " Source: not stated"
-            lines.append((reason.letter, f"Forbidden. {reason.text.rstrip('.')}.{source}"))
+            text = reason.text[:1].upper() + reason.text[1:].rstrip(".")
+            lines.append((reason.letter, f"Forbidden. {text}.{source}"))
     kinds = {state for state, _ in occurring}
     if CellState.FULL_THROTTLE in kinds:
         lines.append(
@@ -323,11 +324,10 @@ def note_sections(card: Card, identity: Identity) -> tuple[Section, ...]:
     tuple of Section
         Sections that have something to say [-]
     """
-    tables = dict.fromkeys(
-        f"{percent(table.power_fraction)}, {table.mixture}, {mass_text(card, table.mass)}. "
-        f"{basis_text(table)}"
-        for table in card.tables
-    )
+    tables: dict[tuple[str, str, float], list[str]] = {}
+    for table in card.tables:
+        powers = tables.setdefault((table.mixture, basis_text(table), table.mass), [])
+        powers.append(percent(table.power_fraction))
     handbook = str(identity.handbook)
     aircraft = (
         f"Type {identity.aircraft_type}, s/n {identity.serial or 'not stated'}",
@@ -338,7 +338,13 @@ def note_sections(card: Card, identity: Identity) -> tuple[Section, ...]:
     sections = (
         *card.sections,
         Section("Notes", card.notes),
-        Section("Tables of this card", tuple(tables)),
+        Section(
+            "Tables of this card",
+            tuple(
+                f"{mixture}, {mass_text(card, mass)}: {', '.join(dict.fromkeys(powers))}. {basis}"
+                for (mixture, basis, mass), powers in tables.items()
+            ),
+        ),
         Section("Aircraft", aircraft),
     )
     return tuple(section for section in sections if section.lines)
