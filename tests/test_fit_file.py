@@ -194,7 +194,7 @@ def test_a_fit_of_other_equations_is_not_used(tree: Path) -> None:
 
 def test_evidence_changed_since_is_told(tree: Path) -> None:
     """Someone who corrects a handbook row must hear that the fit does not know it."""
-    exchange(tree, "card:\n", "evidence: [rows.csv]\n\ncard:\n")
+    exchange(tree, "evidence: [specimen-handbook.csv]", "evidence: [rows.csv]")
     tree.with_name("rows.csv").write_text(ROWS)
     fit(tree, ROWS)
     tree.with_name("rows.csv").write_text(ROWS.replace("22.6", "22.7"))
