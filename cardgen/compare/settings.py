@@ -65,6 +65,8 @@ class Change:
         Name of the mixture [-]
     power_fraction : ndarray
         Share of the newer rating that is asked of the newer aircraft [-]
+    isa_deviation : ndarray
+        Departure of temperature from standard at the pressure altitude [K]
     old, new : Side
         The settings [-]
     difference : ndarray, shape (..., 4)
@@ -78,6 +80,7 @@ class Change:
     basis: Basis
     mixture: str
     power_fraction: FloatArray
+    isa_deviation: FloatArray
     old: Side
     new: Side
     difference: FloatArray
@@ -183,6 +186,7 @@ def _change(
         basis=basis,
         mixture=mixture,
         power_fraction=np.broadcast_to(fraction * ratio, answered.shape),
+        isa_deviation=_deviation(choices)[None, :, None],
         old=before,
         new=after,
         difference=after.values - before.values,
@@ -193,15 +197,19 @@ def _change(
 
 def _situation(model: Model, choices: CardChoices, mixture: str) -> Situation:
     """Where the settings are, as on a card."""
-    by_density = choices.altitude_kind == "density"
-    deviation = np.zeros(1) if by_density else np.array(choices.isa_deviation)
     return situation_of(
         np.array(choices.altitude)[:, None, None],
-        deviation[None, :, None],
-        by_density=by_density,
+        _deviation(choices)[None, :, None],
+        by_density=choices.altitude_kind == "density",
         mass=np.array(choices.mass)[:, None, None, None, None],
         mixture=model.mixture_index(mixture),
     )
+
+
+def _deviation(choices: CardChoices) -> FloatArray:
+    """Departures from standard temperature: a card by density altitude has no other than 0."""
+    by_density = choices.altitude_kind == "density"
+    return np.zeros(1) if by_density else np.array(choices.isa_deviation)
 
 
 def _values(

@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import os
+from collections.abc import Mapping
 from pathlib import Path
+from typing import Any
 
 from cardgen.aircraft import Aircraft
 from cardgen.errors import DataError
@@ -19,19 +21,25 @@ from cardgen.profile.checks import (
 from cardgen.profile.digest import digest_numbers, digest_parts
 from cardgen.profile.document import FuelSupply, Identity, PartIdentity, Profile
 from cardgen.profile.engine_file import EngineFile
+from cardgen.profile.keys import Kind
 from cardgen.profile.limit_sections import merge_limits
 from cardgen.profile.parsing import ProfileFile, parse_file
 from cardgen.profile.propeller_file import PropellerFile
 from cardgen.profile.references import parse_part, resolve
 
 
-def load_profile(path: str | os.PathLike[str]) -> Profile:
+def load_profile(
+    path: str | os.PathLike[str], *, instead: Mapping[Kind, str | os.PathLike[str]] | None = None
+) -> Profile:
     """Read an aircraft file and the part files it names.
 
     Parameters
     ----------
     path : path-like
         The aircraft file [-]
+    instead : mapping, optional
+        Part files by kind, engine or propeller, that are read instead of those it names; what the
+        aircraft file says of the serial number of such a part does not apply [-]
 
     Returns
     -------
@@ -50,8 +58,13 @@ def load_profile(path: str | os.PathLike[str]) -> Profile:
         aircraft.report(
             ("kind",), f"is a file of kind {aircraft.other_kind}", "a file of kind aircraft"
         )
-    engine = parse_part(aircraft, file, kind="engine", model=EngineFile)
-    propeller = parse_part(aircraft, file, kind="propeller", model=PropellerFile)
+    others = {kind: os.fspath(part) for kind, part in (instead or {}).items()}
+    engine = parse_part(
+        aircraft, file, kind="engine", model=EngineFile, instead=others.get("engine")
+    )
+    propeller = parse_part(
+        aircraft, file, kind="propeller", model=PropellerFile, instead=others.get("propeller")
+    )
     evidence = [
         resolve(aircraft, file, key=("evidence", index), reference=reference)
         for index, reference in enumerate(aircraft.get("evidence") or ())
@@ -70,7 +83,8 @@ def load_profile(path: str | os.PathLike[str]) -> Profile:
     ]
     if problems or engine is None or propeller is None:
         raise DataError(problems)
-    return _profile(file, aircraft, engine, propeller, tuple(p for p in evidence if p))
+    kept = tuple(path for path in evidence if path)
+    return _profile(file, aircraft, engine, propeller, evidence=kept, instead=others)
 
 
 def _profile(
@@ -78,7 +92,9 @@ def _profile(
     aircraft_file: ProfileFile[AircraftFile],
     engine_file: ProfileFile[EngineFile],
     propeller_file: ProfileFile[PropellerFile],
+    *,
     evidence: tuple[Path, ...],
+    instead: Mapping[Kind, str],
 ) -> Profile:
     """Return the profile that sound files describe."""
     aircraft, engine, propeller = (
@@ -93,7 +109,7 @@ def _profile(
         (engine.limits, propeller.limits, aircraft.limits),
         ratings=[rating.limit() for rating in engine.ratings],
     )
-    identity = _identity(aircraft, engine_file, propeller_file)
+    identity = _identity(aircraft, engine_file, propeller_file, instead)
     mixtures = tuple(section.mixture() for section in aircraft.mixtures)
     card = aircraft.card.choices(
         gross_mass=aircraft.airframe.gross_mass, mixtures=tuple(m.name for m in mixtures)
@@ -139,18 +155,23 @@ def _identity(
     aircraft: AircraftFile,
     engine: ProfileFile[EngineFile],
     propeller: ProfileFile[PropellerFile],
+    instead: Mapping[Kind, str],
 ) -> Identity:
     """Return what a card says about whose it is."""
     stated = aircraft.identity
+
+    def part(kind: Kind, file: ProfileFile[Any], serial: str | None, named: str) -> PartIdentity:
+        if kind in instead:
+            return PartIdentity(file.get("model"), "", instead[kind])
+        return PartIdentity(file.get("model"), serial or "", named)
+
     return Identity(
         registration=stated.registration,
         aircraft_type=stated.type,
         serial=stated.serial or "",
         operator=stated.operator or "",
-        engine=PartIdentity(engine.get("model"), stated.engine_serial or "", aircraft.engine),
-        propeller=PartIdentity(
-            propeller.get("model"), stated.propeller_serial or "", aircraft.propeller
-        ),
+        engine=part("engine", engine, stated.engine_serial, aircraft.engine),
+        propeller=part("propeller", propeller, stated.propeller_serial, aircraft.propeller),
         approvals=tuple(stated.approvals),
         handbook=stated.handbook.source(),
         date=aircraft.date,

@@ -78,7 +78,12 @@ def resolve(
 
 
 def parse_part(
-    aircraft: ProfileFile[Any], path: Path, *, kind: Kind, model: type[FileT]
+    aircraft: ProfileFile[Any],
+    path: Path,
+    *,
+    kind: Kind,
+    model: type[FileT],
+    instead: str | None = None,
 ) -> ProfileFile[FileT] | None:
     """Return the part file that an aircraft file names, None where it names none that can be read.
 
@@ -92,12 +97,19 @@ def parse_part(
         Kind of part, and key of the reference [-]
     model : type
         Model of that kind of file [-]
+    instead : str, optional
+        Path, named by the user and so from anywhere, that is read instead of the reference [-]
 
     Returns
     -------
     ProfileFile or None
         The part file, which holds its own problems [-]
     """
+    if instead is not None:
+        part = parse_file(Path(instead), model, kind=kind, shown=instead)
+        if part.other_kind:
+            part.report(("kind",), f"is a file of kind {part.other_kind}", f"a file of kind {kind}")
+        return part
     reference = aircraft.get(kind)
     if reference is None:
         return None
