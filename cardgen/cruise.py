@@ -237,7 +237,7 @@ def balance(
     Returns
     -------
     CruisePoint
-        Arrays of the broadcast shape; NaN and `OUTSIDE_MODEL` where the model has no answer
+        Arrays of the broadcast shape; NaN and `OUTSIDE_MODEL` where the model has no answer [-]
     """
     problem = _problem(aircraft, condition, setting)
     airspeed = np.asarray(true_airspeed, dtype=np.float64)
@@ -305,7 +305,7 @@ def solve_cruise(aircraft: Aircraft, condition: Condition, *, setting: Setting) 
     CruisePoint
         Arrays of the broadcast shape. Where the asked power or manifold pressure is out of reach,
         the full-throttle setting with what it really gives; where there is no level flight or the
-        model does not cover the point, NaN and the reason in `status`
+        model does not cover the point, NaN and the reason in `status` [-]
 
     Notes
     -----

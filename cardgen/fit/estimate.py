@@ -50,13 +50,13 @@ class Estimate:
     prior_deviation : ndarray, shape (p,)
         Standard deviations of the prior [-]
     scatter : ndarray, shape (3,)
-        Standard deviation of what model and table disagree in besides parameters, SI, in the order
-        of `cardgen.fit.evidence.QUANTITIES`
+        Standard deviation of what model and table disagree in besides parameters, in the order of
+        `cardgen.fit.evidence.QUANTITIES` [Pa, kg/s, m/s]
     residual : ndarray, shape (rows, 3)
-        Model less evidence, SI; NaN where nothing was read, and for a manifold pressure that was
-        asked of the model
+        Model less evidence; NaN where nothing was read, and for a manifold pressure that was
+        asked of the model [Pa, kg/s, m/s]
     left_out : ndarray, shape (rows, 3)
-        The same for a fit that has not seen the row, to first order
+        The same for a fit that has not seen the row, to first order [Pa, kg/s, m/s]
     standardised : ndarray, shape (rows, 3)
         `left_out` over the deviation expected of it [-]
     """

@@ -59,7 +59,8 @@ class Knowledge:
     covariance : ndarray, shape (p, p)
         Their covariance [-]
     scatter : ndarray, shape (3,)
-        Deviation of manifold pressure, fuel flow and airspeed besides the parameters, SI
+        Deviation of manifold pressure, fuel flow and airspeed besides the parameters
+        [Pa, kg/s, m/s]
     fitted : tuple of str
         Parts whose parameters come from evidence of that very part [-]
     covers : EvidenceRange, optional

@@ -42,9 +42,9 @@ class CoefficientTable:
     Parameters
     ----------
     forward : SplineGrid
-        C_P, C_T and section angle of attack over (J, blade angle above datum, Mach).
+        C_P, C_T and section angle of attack over (J, blade angle above datum, Mach) [-, -, rad]
     inverse : SplineGrid
-        Blade angle above datum and C_T over (J, relative power, Mach).
+        Blade angle above datum and C_T over (J, relative power, Mach) [rad, -]
     least_power, greatest_power : tuple of float
         Polynomials of J, highest power first, between which C_P can be inverted [-]
     """
