@@ -11,7 +11,7 @@ import numpy.typing as npt
 
 from cardgen.aircraft import Condition, Setting
 from cardgen.atmosphere import standard_pressure, vapour_pressure
-from cardgen.compare.common import common_names, shifts
+from cardgen.compare.joint import common_names, shifts
 from cardgen.cruise import CruiseStatus, solve_cruise
 from cardgen.fit import Part, applied, parameters
 from cardgen.fit.tolerance import COVERAGE_FACTOR
