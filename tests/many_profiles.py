@@ -24,7 +24,8 @@ def write_profiles(folder: Path, count: int, *, seed: int = 1, small: bool = Fal
     (folder / "aircraft").mkdir()
     rng = random.Random(seed)
     whole = (DEMO / "aircraft" / "specimen.yaml").read_text()
-    head, card = whole.split("\ncard:\n")
+    head, _, card = whole.partition("\ncard:\n")
+    card = card.partition("\nevidence:")[0] + "\n"  # generated aircraft have no points files
     files = []
     for place in range(count):
         text = head

@@ -26,6 +26,7 @@ FindingName = (
         "full_throttle",
         "gauge_calibration",
         "evidence",
+        "break_in",
         "solution",
         "over_square",
     ]

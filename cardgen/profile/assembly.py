@@ -11,9 +11,11 @@ from cardgen.limits.statement import gauge_notes, state_all
 from cardgen.profile.digest import digest_of
 from cardgen.profile.document import Profile
 from cardgen.tables.card import Card, Section
+from cardgen.tables.choices import BreakIn, CardChoices
 from cardgen.tables.compose import Words, compose
 from cardgen.tables.printed import message_units
 from cardgen.tables.solution import Model
+from cardgen.units import to_unit
 
 DEMO_STAMP = "DEMONSTRATION DATA, NOT FOR FLIGHT"
 NOT_FITTED_STAMP = "NOT FITTED: planning estimate only"
@@ -145,7 +147,32 @@ def stamps(profile: Profile, learned: Learned | None) -> tuple[str, ...]:
         found.append(NOT_FITTED_STAMP)
     elif learned.replaced:
         found.append(f"NOT FLOWN SINCE THE CHANGE of {' and '.join(learned.replaced)}")
+    if profile.card.break_in is not None:
+        found.append(f"BREAK-IN: {break_in_text(profile.card.break_in, profile.card)}")
     return tuple(found)
+
+
+def break_in_text(band: BreakIn, choices: CardChoices) -> str:
+    """Return what an operator keeps to while a fresh engine is run in.
+
+    Parameters
+    ----------
+    band : BreakIn
+        The power band and ceiling [-]
+    choices : CardChoices
+        The card that they narrow [-]
+
+    Returns
+    -------
+    str
+        Part of a sentence [-]
+    """
+    unit = choices.units.altitude
+    ceiling = float(to_unit(band.greatest_altitude, unit))
+    return (
+        f"{100.0 * band.least_power_fraction:.4g} to {100.0 * band.greatest_power_fraction:.4g} % "
+        f"power, at or below {ceiling:.0f} {unit} {choices.altitude_kind} altitude"
+    )
 
 
 def percent_of_text(profile: Profile) -> str:
@@ -179,6 +206,12 @@ def _sections(profile: Profile, learned: Learned | None) -> tuple[Section, ...]:
         f"{none.category.replace('_', ' ').capitalize()}: none ({none.source})"
         for none in profile.limits.stated_none
     )
+    band = profile.card.break_in
+    if band is not None:
+        limits.append(
+            f"Break-in, by choice of the operator: {break_in_text(band, profile.card)} "
+            f"({band.source})"
+        )
     return (
         Section("Limits applied", tuple(limits)),
         Section("Gauges", _gauge_lines(profile)),

@@ -7,7 +7,13 @@ from typing import Annotated, Literal
 
 from pydantic import Field, Tag, model_validator
 
-from cardgen.profile.section import Section, by_shape, require_increasing
+from cardgen.profile.section import (
+    Section,
+    Sourced,
+    by_shape,
+    require_increasing,
+    require_order,
+)
 from cardgen.profile.values import (
     Altitude,
     Choice,
@@ -20,7 +26,7 @@ from cardgen.profile.values import (
     Wind,
     wrong,
 )
-from cardgen.tables.choices import CardChoices, UnitSet
+from cardgen.tables.choices import BreakIn, CardChoices, UnitSet
 
 UNIT_SETS = {
     "us": UnitSet(),
@@ -62,6 +68,31 @@ class UnitsSection(Section):
             if (value := getattr(self, key)) is not None
         }
         return replace(UNIT_SETS[self.set], **stated)
+
+
+_HAIR = 1e-9  # what converting a unit may leave of a share, or of a metre
+
+
+class BreakInSection(Section):
+    """Power band and ceiling that the operator keeps until a fresh engine is run in."""
+
+    least_power: PercentPower = Field(description="Least percent power")
+    greatest_power: PercentPower = Field(description="Greatest percent power")
+    greatest_altitude: Altitude = Field(
+        description="Greatest altitude, density or pressure as the rows of the card are"
+    )
+    source: Sourced
+
+    @model_validator(mode="after")
+    def _check(self) -> BreakInSection:
+        require_order(self, "least_power", "greatest_power")
+        return self
+
+    def break_in(self) -> BreakIn:
+        """Return the choice in SI."""
+        return BreakIn(
+            self.least_power, self.greatest_power, self.greatest_altitude, self.source.source()
+        )
 
 
 _ORDERED = ("rpm", "percent_powers", "altitudes", "temperatures", "masses", "winds")
@@ -125,6 +156,12 @@ class CardSection(Section):
         description="Paper; letter and A4 carry two pages each; half-letter where left out",
     )
 
+    break_in: BreakInSection | None = Field(
+        None,
+        description="Narrows the card to the operator's power band and ceiling for a fresh engine; "
+        "left out once it is run in",
+    )
+
     @model_validator(mode="after")
     def _check(self) -> CardSection:
         for key in _ORDERED:
@@ -138,7 +175,25 @@ class CardSection(Section):
         for index, name in enumerate(self.mixtures or ()):
             if name in (self.mixtures or ())[:index]:
                 raise wrong(f"{name!r} is listed twice", "each once", at=("mixtures", index))
+        for key, kept in (("percent_powers", self._powers()), ("altitudes", self._altitudes())):
+            if not kept:
+                raise wrong("none of them lies within break_in", "one or more that do", at=(key,))
         return self
+
+    def _powers(self) -> list[float]:
+        """Return the powers that are shown."""
+        band = self.break_in
+        if band is None:
+            return self.percent_powers
+        low, high = band.least_power - _HAIR, band.greatest_power + _HAIR
+        return [power for power in self.percent_powers if low <= power <= high]
+
+    def _altitudes(self) -> list[float]:
+        """Return the altitudes that are shown."""
+        band = self.break_in
+        if band is None:
+            return self.altitudes
+        return [a for a in self.altitudes if a <= band.greatest_altitude + _HAIR]
 
     def choices(self, *, gross_mass: float, mixtures: tuple[str, ...]) -> CardChoices:
         """Return the choices, with what is left out filled in.
@@ -161,8 +216,8 @@ class CardSection(Section):
         units = UNIT_SETS[self.units] if isinstance(self.units, str) else self.units.unit_set()
         return CardChoices(
             rpm=tuple(self.rpm),
-            power_fraction=tuple(self.percent_powers),
-            altitude=tuple(self.altitudes),
+            power_fraction=tuple(self._powers()),
+            altitude=tuple(self._altitudes()),
             altitude_kind=kind,
             isa_deviation=tuple(self.temperatures),
             mass=tuple(self.masses) if self.masses else (gross_mass,),
@@ -170,4 +225,5 @@ class CardSection(Section):
             units=units,
             paper=self.paper,
             relative_humidity=self.relative_humidity,
+            break_in=self.break_in.break_in() if self.break_in else None,
         )

@@ -132,6 +132,11 @@ card:
   units: us                    # us, metric, or unit by unit: {{set: us, temperature: degF}} with
                                # keys set, pressure, fuel_flow, speed, temperature, altitude, mass
   paper: half-letter           # half-letter, A5, or two-up on letter or A4
+#-  break_in:                  # a fresh engine: narrows the card to the operator's band, ceiling
+#-    least_power: 60 %
+#-    greatest_power: 75 %
+#-    greatest_altitude: 8000 ft
+#-    source: {{document: Invented overhaul sheet, section: "1", revision: "1"}}
 
 # Points files that the model is fitted to, as paths from this file's folder.
 #-evidence: []

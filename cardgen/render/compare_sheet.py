@@ -221,13 +221,11 @@ def _lost(comparison: Comparison) -> Iterator[str]:
 
 
 def _where(comparison: Comparison, mass: int, temperature: int) -> str:
-    """Return mass and temperature where there are several, to add to a heading."""
+    """Return the mass, and the temperature where there are several, to add to a heading."""
     choices = comparison.choices
-    text = ""
-    if len(choices.mass) > 1:
-        unit = choices.units.mass
-        amount = float(to_unit(choices.mass[mass], unit, dimension="mass"))
-        text += f", {amount:.0f} {unit}"
+    unit = choices.units.mass
+    amount = float(to_unit(choices.mass[mass], unit, dimension="mass"))
+    text = f", {amount:.0f} {unit}"
     if choices.altitude_kind == "pressure" and len(choices.isa_deviation) > 1:
         text += f", ISA {choices.isa_deviation[temperature]:+.0f} °C"
     return text

@@ -5,6 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Literal
 
+from cardgen.limits.kinds import Source
+
 
 @dataclass(frozen=True, slots=True)
 class UnitSet:
@@ -16,6 +18,19 @@ class UnitSet:
     temperature: str = "degC"
     altitude: str = "ft"
     mass: str = "lb"
+
+
+@dataclass(frozen=True, slots=True)
+class BreakIn:
+    """Power band and ceiling that an operator keeps while a fresh engine is run in.
+
+    Powers are shares of the percent rating; the ceiling [m] is of the kind of the card's rows.
+    """
+
+    least_power_fraction: float
+    greatest_power_fraction: float
+    greatest_altitude: float
+    source: Source
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,3 +47,4 @@ class CardChoices:
     units: UnitSet = UnitSet()
     paper: str = "half-letter"
     relative_humidity: float = 0.0
+    break_in: BreakIn | None = None  # powers and altitudes above are already narrowed to it

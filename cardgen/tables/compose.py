@@ -8,7 +8,7 @@ card and a check of what it prints cannot disagree.
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
@@ -16,10 +16,10 @@ import numpy.typing as npt
 
 from cardgen.atmosphere import pressure_altitude_at_density_altitude, standard_temperature
 from cardgen.cruise import CruiseStatus
-from cardgen.limits import Findings, Verdict
+from cardgen.limits import Findings, Judgement, Verdict
 from cardgen.limits.bars import bars_of
 from cardgen.tables.card import Card, CardTable, CellState, Reason, Section
-from cardgen.tables.choices import CardChoices
+from cardgen.tables.choices import BreakIn, CardChoices
 from cardgen.tables.printed import (
     decimals,
     fuel_flow_in,
@@ -39,6 +39,9 @@ BoolArray = npt.NDArray[np.bool_]
 
 TEMPERATURE_SPREAD: Final = 20.0
 """Departure from standard over which a density-altitude card states its error, either way [K]."""
+
+
+_HAIR: Final = 1e-6  # share of rated power that solving may leave a setting off what was asked
 
 
 @dataclass(frozen=True, slots=True)
@@ -154,7 +157,7 @@ def _block(model: Model, choices: CardChoices, mixture: int) -> _Block:
     return _Block(
         mixture=mixture,
         solution=exact,
-        findings=findings,
+        findings=_with_break_in(findings, exact, choices.break_in),
         pressure=nearest,
         tolerance=(tolerance.manifold_pressure, tolerance.fuel_flow, tolerance.true_airspeed),
     )
@@ -174,6 +177,28 @@ def _judged(
         with_tolerance=False,
     )
     return judge(model, solution)
+
+
+def _with_break_in(findings: Findings, solution: Solution, band: BreakIn | None) -> Findings:
+    """Findings with the operator's power band added: full throttle may fall below it."""
+    if band is None:
+        return findings
+    fraction = solution.power_fraction
+    low, high = band.least_power_fraction, band.greatest_power_fraction
+    margin = np.minimum(fraction - low, high - fraction)
+    words = f"break-in: keep {100.0 * low:.4g} to {100.0 * high:.4g} % power"
+    judgement = Judgement(
+        limit="break_in",
+        name="Break-in",
+        statement=words,
+        source=str(band.source),
+        verdict=np.where(margin < -_HAIR, Verdict.OUTSIDE, Verdict.INSIDE).astype(np.int8),
+        margin=margin,
+        unit="%",
+        to_unit=lambda share: 100.0 * share,
+        describe=lambda index: f"{100.0 * float(fraction[index]):.0f} % power; {words}",
+    )
+    return replace(findings, judgements=(*findings.judgements, judgement))
 
 
 def _states(block: _Block, barred: BoolArray) -> npt.NDArray[np.int8]:
