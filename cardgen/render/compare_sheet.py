@@ -89,6 +89,7 @@ def compare_sheet(comparison: Comparison, old: Compared, new: Compared) -> bytes
     registration = printable(new.identity.registration)
     return finished(
         set_sheet(marks_of(comparison, old, new), blocks, paper),
+        paper,
         title=f"{registration} comparison of configurations",
         subject=f"Supplementary cruise settings of {registration}, {new.identity.date}",
         keywords=f"profile-digests {old.digest} {new.digest}",

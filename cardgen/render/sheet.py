@@ -10,7 +10,7 @@ from cardgen.errors import ReleaseError
 from cardgen.render.boxes import Box, Frame, Page, Rule, Run, moved
 from cardgen.render.columns import LEADING, NOTE
 from cardgen.render.fonts import CAP_HEIGHT, Face, printable, width, wrap
-from cardgen.render.paper import INCH, MILLIMETRE, Paper, find_paper
+from cardgen.render.paper import INCH, MILLIMETRE, Paper, find_paper, impose
 from cardgen.render.wording import SUPPLEMENTARY, page_text
 from cardgen.render.words import read_words
 
@@ -260,13 +260,17 @@ def _foot(marks: Marks, measure: float) -> tuple[tuple[Box, ...], float]:
     return tuple(boxes), height - y
 
 
-def finished(pages: Sequence[Page], *, title: str, subject: str, keywords: str) -> bytes:
+def finished(
+    pages: Sequence[Page], paper: Paper, *, title: str, subject: str, keywords: str
+) -> bytes:
     """Return a sheet as a PDF that was read back against its pages.
 
     Parameters
     ----------
     pages : sequence of Page
         The pages [-]
+    paper : Paper
+        What they are printed on, two to a sheet where it says so [-]
     title, subject, keywords : str
         What the file says about itself [-]
 
@@ -282,7 +286,7 @@ def finished(pages: Sequence[Page], *, title: str, subject: str, keywords: str) 
     """
     from cardgen.render.pdf import Metadata, draw  # noqa: PLC0415 - loads the PDF library
 
-    content = draw(pages, Metadata(title, subject, keywords))
+    content = draw(impose(pages, paper), Metadata(title, subject, keywords))
     found = read_words(content)
     if len(found) != len(pages):
         raise ReleaseError(f"read-back: {len(found)} pages instead of {len(pages)}")
