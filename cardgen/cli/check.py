@@ -102,7 +102,7 @@ def check(
     from cardgen.tables.report import report_setting  # noqa: PLC0415
 
     model = model_of(read, learned)
-    name = mixture or read.card.mixtures[0]
+    name = read.card.mixtures[0] if mixture is None else mixture
     try:
         index = model.mixture_index(name)
     except KeyError:

@@ -55,7 +55,7 @@ def check_points(
 
     model = model_of(profile, learned)
     try:
-        index = model.mixture_index(mixture or profile.card.mixtures[0])
+        index = model.mixture_index(profile.card.mixtures[0] if mixture is None else mixture)
     except KeyError as error:
         known = ", ".join(item.name for item in profile.mixtures)
         raise UsageError(f"{error.args[0]!r} is no mixture; the profile has {known}") from None

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+import functools
 import math
 import re
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from typing import Final
 
 import click
@@ -14,6 +15,18 @@ from cardgen.units import Dimension, parse_quantity
 
 MOST_VALUES: Final = 10_000
 """Most values that one option may stand for."""
+
+# Beyond these nothing can be meant; what is only unusual is for the model and the limits to judge.
+# Density altitude reaches lower than pressure altitude. Common practice, no source.
+_POSSIBLE: Final[Mapping[Dimension, tuple[str, str]]] = {
+    "pressure": ("1 inHg", "100 inHg"),
+    "rotational speed": ("300 rpm", "8000 rpm"),
+    "length": ("-15000 ft", "60000 ft"),
+    "temperature": ("-93 degC", "67 degC"),
+    "temperature difference": ("-100 degC", "100 degC"),
+    "mass": ("200 lb", "60000 lb"),
+    "fraction": ("1 %", "200 %"),
+}
 
 _BARE: Final = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?")
 
@@ -39,7 +52,9 @@ def quantity(
     """
 
     def read(_ctx: object, _param: object, text: str | None) -> float | None:
-        return None if text is None else _one(text, dimension, bare_unit)
+        if text is None:
+            return None
+        return _possible(_one(text, dimension, bare_unit), text, dimension)
 
     return read
 
@@ -66,11 +81,16 @@ def quantities(
         if text is None:
             return None
         if ":" in text:
-            return _stepped(text, dimension, bare_unit)
-        parts = text.split(",")
-        if len(parts) > MOST_VALUES:
-            raise click.BadParameter(f"more than {MOST_VALUES} values")
-        return tuple(_one(part, dimension, bare_unit) for part in parts)
+            values = _stepped(text, dimension, bare_unit)
+            parts = [text] * len(values)
+        else:
+            parts = text.split(",")
+            if len(parts) > MOST_VALUES:
+                raise click.BadParameter(f"more than {MOST_VALUES} values")
+            values = tuple(_one(part, dimension, bare_unit) for part in parts)
+        for value, part in zip(values, parts, strict=True):
+            _possible(value, part, dimension)
+        return values
 
     return read
 
@@ -84,6 +104,22 @@ def _one(text: str, dimension: Dimension, bare_unit: str) -> float:
         return parse_quantity(cleaned, dimension=dimension)
     except CardgenError as error:
         raise click.BadParameter(str(error)) from error
+
+
+def _possible(value: float, text: str, dimension: Dimension) -> float:
+    """Return a value that can be meant; refuse any other."""
+    least, greatest = _bounds(dimension)
+    if not least <= value <= greatest:
+        expected = " to ".join(_POSSIBLE[dimension])
+        raise click.BadParameter(f"{text!r} is not possible; expected {expected}")
+    return value
+
+
+@functools.cache
+def _bounds(dimension: Dimension) -> tuple[float, float]:
+    """Return what can be meant, in SI."""
+    least, greatest = _POSSIBLE[dimension]
+    return parse_quantity(least, dimension=dimension), parse_quantity(greatest, dimension=dimension)
 
 
 def _stepped(text: str, dimension: Dimension, bare_unit: str) -> tuple[float, ...]:
