@@ -3,8 +3,12 @@
 from __future__ import annotations
 
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import click
+
+if TYPE_CHECKING:
+    from cardgen.profile.document import Profile
 
 
 @click.command()
@@ -25,12 +29,18 @@ import click
     is_flag=True,
     help="Write the fit file although a column looks like another unit than its name says.",
 )
+@click.option(
+    "--sheet",
+    type=click.Path(path_type=Path),
+    help="Write a sheet of the points to fly next (PDF); without --points nothing is fitted.",
+)
 @click.option("--json", "as_json", is_flag=True, help="Print JSON and nothing else.")
 def fit(
     profile: Path,
     points: tuple[str, ...],
     out: Path | None,
     accept_suspect: bool,
+    sheet: Path | None,
     as_json: bool,
 ) -> int:
     """Fit PROFILE to handbook rows and flight points, and say how well it went.
@@ -39,6 +49,7 @@ def fit(
     Examples:
       cardgen fit profiles/aircraft/specimen.yaml
       cardgen fit profiles/aircraft/specimen.yaml --points flights.csv --out new.fit.yaml
+      cardgen fit profiles/aircraft/specimen.yaml --sheet fly-next.pdf
     """
     from cardgen.errors import UsageError  # noqa: PLC0415
     from cardgen.profile import load_profile  # noqa: PLC0415
@@ -48,6 +59,9 @@ def fit(
     from cardgen.render.files import write_whole  # noqa: PLC0415
 
     read = load_profile(profile)
+    if sheet is not None and not points:
+        _write_sheet(read, sheet, fit_file=out)
+        return 0
     paths = points or tuple(str(path) for path in read.evidence)
     if not paths:
         raise UsageError(
@@ -61,4 +75,23 @@ def fit(
     record = record_of(read, given, start, found=found, warnings=start.notes)
     write_whole(target, fit_text(record).encode())
     click.echo(f"Written: {target}")
+    if sheet is not None:
+        _write_sheet(read, sheet, fit_file=target)
     return 0
+
+
+def _write_sheet(profile: Profile, sheet: Path, *, fit_file: Path | None) -> None:
+    """Write the flight-test sheet of a profile, with the fit that goes with it."""
+    from cardgen.errors import UsageError  # noqa: PLC0415
+    from cardgen.profile.assembly import model_of  # noqa: PLC0415
+    from cardgen.profile.fit_file import learned_for  # noqa: PLC0415
+    from cardgen.render.files import write_whole  # noqa: PLC0415
+    from cardgen.render.flight_sheet import flight_sheet  # noqa: PLC0415
+    from cardgen.tables.flights import points_to_fly  # noqa: PLC0415
+
+    if sheet.suffix.casefold() != ".pdf":
+        raise UsageError(f"--sheet {sheet}: the sheet is a PDF; give a name that ends in .pdf")
+    learned = learned_for(profile, fit=fit_file)
+    plan = points_to_fly(model_of(profile, learned), profile.card)
+    write_whole(sheet, flight_sheet(profile, learned, plan))
+    click.echo(f"Written: {sheet}", err=True)
