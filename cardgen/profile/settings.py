@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import contextlib
+import re
 from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
@@ -37,12 +39,15 @@ COLUMNS: Final[Mapping[str, tuple[Dimension, ...]]] = {
 
 # Beyond these nothing can be meant, whatever the unit.
 _BOUNDS: Final[Mapping[str, tuple[float, float]]] = {
-    "map": (0.0, 100.0 * INCH_OF_MERCURY),
+    "map": (INCH_OF_MERCURY, 100.0 * INCH_OF_MERCURY),
     "rpm": (300.0, 8000.0),
     "pressure_altitude": (-2000.0 * FOOT, 60_000.0 * FOOT),
     "oat": (180.0, 340.0),
     "weight": (200.0 * POUND, 60_000.0 * POUND),
 }
+
+
+_PLAIN: Final = re.compile(r"[0-9.,+-]*")
 
 
 @dataclass(frozen=True, slots=True)
@@ -159,10 +164,11 @@ def _numbers(sheet: Sheet, quantity: str, *, needed: bool) -> FloatArray:
     place, column = found
     texts = _texts(sheet, place)
     least, greatest = _BOUNDS[quantity]
-    try:
-        plain = np.array([text or "nan" for text in texts], dtype=np.float64)
-    except ValueError:
-        plain = np.full(len(texts), np.inf)  # some cell is no number: all are looked at one by one
+    plain = np.full(len(texts), np.inf)  # where some cell is no number, all are looked at singly
+    # What NumPy takes for a number besides: 1_000, nan, digits of other scripts.
+    if _PLAIN.fullmatch(",".join(texts)):
+        with contextlib.suppress(ValueError):
+            plain = np.array([text or "nan" for text in texts], dtype=np.float64)
     unit = column.unit
     values = plain if unit is None else plain * unit.factor + unit.offset
     empty = np.array([not text for text in texts], dtype=np.bool_)
