@@ -374,7 +374,9 @@ def _brackets(
     greatest = _engine_at(problem, 0.5 * problem.sound).power
     fastest = np.cbrt(2.0 * np.maximum(greatest, 0.0) / (problem.density * problem.parasite))
     upper = np.minimum(fastest, table.greatest_advance_ratio * problem.advance * (1.0 - 1e-9))
-    return np.asarray(lower), np.asarray(np.minimum(upper, 0.5 * problem.sound))
+    upper = np.minimum(upper, 0.5 * problem.sound)
+    # Without power the fastest is 0, where drag is not a number: a bracket of no width instead.
+    return np.asarray(lower), np.asarray(np.maximum(upper, lower))
 
 
 def _solve_chunk(
