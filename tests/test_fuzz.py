@@ -2,12 +2,19 @@
 
 from __future__ import annotations
 
+import json
+import math
 import shutil
 from pathlib import Path
 
 import pytest
 
+from cardgen.aircraft import Condition, Setting
 from cardgen.cli.main import run
+from cardgen.cruise import CruiseStatus, solve_cruise
+from cardgen.errors import ReleaseError
+from cardgen.profile import load_profile
+from cardgen.render.history import HISTORY_NAME, load_history
 
 ROOT = Path(__file__).parent.parent
 SETTING = {"--map": "23", "--rpm": "2400", "--altitude": "6000"}
@@ -72,3 +79,71 @@ def test_a_mixture_without_a_name_is_not_the_first_of_the_card(
     """Only an option that is left out stands for the card's own."""
     words = [f"{name}={number}" for name, number in SETTING.items()]
     refused(capsys, ["check", str(demo), *words, "--mixture="], code=2, because="no mixture")
+
+
+@pytest.mark.parametrize(
+    "cell", ["2_400", "２４００", "nan", "inf", "2400.", "+2400", "2.4e3", "0"]
+)
+def test_a_settings_file_takes_plain_numbers_only(
+    capsys: pytest.CaptureFixture[str], demo: Path, cell: str
+) -> None:
+    """A file of settings reads numbers as a points file does."""
+    file = demo.with_name("settings.csv")
+    file.write_text(f"map_inhg,rpm,pressure_altitude_ft\n23,{cell},6000\n23,2300,6000\n")
+    if cell in ("2400.", "+2400"):
+        assert run(["check", str(demo), "--points", str(file)]) == 0
+        assert len(capsys.readouterr().out.splitlines()) == 2
+    else:
+        refused(capsys, ["check", str(demo), "--points", str(file)], code=3, because=":2:4: rpm:")
+
+
+def test_a_gauge_that_reads_nothing_is_no_setting(
+    capsys: pytest.CaptureFixture[str], demo: Path
+) -> None:
+    """No engine that turns has a manifold pressure of zero."""
+    file = demo.with_name("settings.csv")
+    file.write_text("map_inhg,rpm,pressure_altitude_ft\n0,2300,6000\n")
+    refused(capsys, ["check", str(demo), "--points", str(file)], code=3, because="not possible")
+
+
+@pytest.mark.parametrize("given", [{"power": 0.0}, {"power": -1e4}, {"manifold_pressure": 0.0}])
+def test_without_power_there_is_no_level_flight(given: dict[str, float]) -> None:
+    """An engine that gives nothing is an answer of its own, not a division by zero."""
+    profile = load_profile(ROOT / "profiles" / "aircraft" / "specimen.yaml")
+    setting = Setting(2300.0, profile.mixtures[0], **given)
+    point = solve_cruise(profile.aircraft, Condition(8e4, 280.0, 1200.0), setting=setting)
+    assert point.status == CruiseStatus.NO_LEVEL_FLIGHT
+    assert math.isnan(point.true_airspeed)
+
+
+ISSUE: dict[str, object] = {
+    "number": 1, "digest": "d" * 64, "content": "c" * 64, "parts": {"engine": "e" * 64},
+    "replaces": None, "files": {"pdf": "f" * 64}, "state": "released", "program": "",
+}  # fmt: skip
+
+
+@pytest.mark.parametrize(
+    "damage",
+    [
+        {"parts": 1}, {"parts": ["csv"]}, {"parts": {"engine": None}}, {"files": None},
+        {"files": {"pdf": {}}}, {"digest": 3}, {"content": []}, {"replaces": "1"},
+        {"state": "lost"}, {"number": True}, {"number": 1.0}, {"program": None},
+    ],
+)  # fmt: skip
+def test_a_history_with_a_value_of_another_kind_is_refused(
+    tmp_path: Path, damage: dict[str, object]
+) -> None:
+    """What is half understood could give a number twice."""
+    content = json.dumps({"cards": {"specimen": [ISSUE | damage]}})
+    (tmp_path / HISTORY_NAME).write_text(content)
+    with pytest.raises(ReleaseError, match="not a history"):
+        load_history(tmp_path)
+    (tmp_path / HISTORY_NAME).write_text(json.dumps({"cards": {"specimen": [ISSUE]}}))
+    assert load_history(tmp_path)["specimen"][0].number == 1
+
+
+def test_a_history_nested_without_end_is_refused(tmp_path: Path) -> None:
+    """Depth is no way round."""
+    (tmp_path / HISTORY_NAME).write_text('{"cards":' + "[" * 100_000)
+    with pytest.raises(ReleaseError, match="not a history"):
+        load_history(tmp_path)

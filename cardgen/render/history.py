@@ -73,10 +73,8 @@ def load_history(folder: Path) -> History:
         return {}
     try:
         cards: dict[str, list[dict[str, Any]]] = json.loads(content)["cards"]
-        history = {
-            name: tuple(Issue(**issue) for issue in issues) for name, issues in cards.items()
-        }
-    except (ValueError, TypeError, KeyError, AttributeError) as error:
+        history = {name: tuple(map(_issue, issues)) for name, issues in cards.items()}
+    except (ValueError, TypeError, KeyError, AttributeError, RecursionError) as error:
         raise ReleaseError(
             f"{path}: is not a history of issues ({error}); restore it, or move it and the cards"
             " beside it away to number from 1 again"
@@ -86,6 +84,22 @@ def load_history(folder: Path) -> History:
         if numbers != list(range(1, len(numbers) + 1)):
             raise ReleaseError(f"{path}: the issues of {name} are numbered {numbers}; restore it")
     return history
+
+
+def _issue(raw: dict[str, Any]) -> Issue:
+    """Return an issue as read; refuse what another program or a hand made of it."""
+    issue = Issue(**raw)
+    digests = (issue.parts, issue.files)
+    if not (
+        type(issue.number) is int
+        and all(type(text) is str for text in (issue.digest, issue.content, issue.program))
+        and all(type(each) is dict for each in digests)
+        and all(type(text) is str for each in digests for text in each.values())
+        and (issue.replaces is None or type(issue.replaces) is int)
+        and issue.state in ("reserved", "released")
+    ):
+        raise ValueError("an issue has a value of the wrong kind")
+    return issue
 
 
 def save_history(folder: Path, history: History) -> None:
