@@ -147,3 +147,52 @@ def test_a_history_nested_without_end_is_refused(tmp_path: Path) -> None:
     (tmp_path / HISTORY_NAME).write_text('{"cards":' + "[" * 100_000)
     with pytest.raises(ReleaseError, match="not a history"):
         load_history(tmp_path)
+
+
+@pytest.mark.parametrize(
+    "name", ["ü", "𝄞 😀", "a\udcff", "a\u202eb", 'a"b', "a'b", "a\\b", "a\x85b"]
+)
+def test_a_fit_can_be_read_whatever_the_profile_is_called(
+    capsys: pytest.CaptureFixture[str], demo: Path, name: str
+) -> None:
+    """What `fit` writes `table` reads."""
+    file = demo.with_name(f"{name}.yaml")
+    text = demo.read_text().replace("Economy", "Lean 😀")
+    file.write_text(text)
+    book, engine = demo.with_name("specimen-handbook.csv"), demo.parents[1] / "engines"
+    for path in (book, engine / "specimen-e6-462.yaml"):
+        path.write_text(path.read_text().replace("Economy", "Lean 😀"))
+    assert run(["fit", str(file)]) == 0
+    assert run(["table", str(file), "--rpm=2300", "--altitude=6000", "--csv"]) == 0
+    assert capsys.readouterr().err == ""
+
+
+@pytest.mark.parametrize(
+    "words",
+    [
+        ["fit", "{demo}", "--out", "{long}"], ["make", "{demo}", "-o", "{long}"],
+        ["make", "{long}"], ["table", "{long}"], ["table", "{demo}", "--fit", "{long}"],
+        ["check", "{demo}", "--points", "{long}"], ["new", "{long}.yaml"],
+    ],
+)  # fmt: skip
+def test_a_name_that_the_system_refuses_is_told(
+    capsys: pytest.CaptureFixture[str], demo: Path, words: list[str]
+) -> None:
+    """A name of 5000 letters is not for a file."""
+    given = [word.format(demo=demo, long="x" * 5000) for word in words]
+    assert run(given) in (2, 3)
+    said = capsys.readouterr()
+    assert said.out == ""
+    assert "name" in said.err
+
+
+def test_too_little_memory_is_told(
+    capsys: pytest.CaptureFixture[str], demo: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """An allocation that fails is no traceback."""
+
+    def greedy(*_args: object, **_more: object) -> None:
+        raise MemoryError
+
+    monkeypatch.setattr("cardgen.tables.rows.rows", greedy)
+    refused(capsys, ["table", str(demo), "--csv"], code=3, because="memory: there is not enough")

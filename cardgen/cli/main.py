@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 import importlib
+import io
 import sys
 from typing import Any, Final
 
 import click
 
 from cardgen import __version__
+from cardgen.cli.failure import failure
 from cardgen.errors import CardgenError
 
 # Command: its module, and the line in the overview (kept here so that help loads no command).
@@ -95,6 +97,9 @@ def run(arguments: list[str] | None = None) -> int:
     int
         Exit code [-]
     """
+    # A file name may hold what the terminal has no letters for; that must not cost the answer.
+    if isinstance(sys.stdout, io.TextIOWrapper):
+        sys.stdout.reconfigure(errors="backslashreplace")
     try:
         result: Any = cli.main(args=arguments, prog_name="cardgen", standalone_mode=False)
     except click.ClickException as error:
@@ -103,11 +108,12 @@ def run(arguments: list[str] | None = None) -> int:
     except click.Abort:
         click.echo("Stopped; nothing was changed.", err=True)
         return 2
-    except CardgenError as error:
-        click.echo(str(error), err=True)
-        return error.exit_code
     except BrokenPipeError:
         # The reader of a pipe left, as `head` does. Python must not complain when it closes stdout.
         sys.stderr.close()
         return 0
+    except (CardgenError, OSError, MemoryError) as error:
+        code, words = failure(error)
+        click.echo(words, err=True)
+        return code
     return result if isinstance(result, int) else 0

@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING, Final
 
 import click
 
+from cardgen.cli.failure import failure
 from cardgen.cli.loading import fit_options, load
 from cardgen.cli.parallel import spread
 from cardgen.errors import CardgenError, ReleaseError, UsageError
@@ -159,8 +160,9 @@ def _make_one(job: _Job) -> _Answer:
     """Make the card of one profile, in whichever process."""
     try:
         outcome = _released(job)
-    except CardgenError as error:
-        return _Answer("", str(error), error.exit_code)
+    except (CardgenError, OSError, MemoryError) as error:
+        code, words = failure(error)
+        return _Answer("", words, code)
     paths = ", ".join(str(path) for path in outcome.files)
     text = f"{job.file.stem}: {outcome}, issue {outcome.issue}: {paths}"
     if outcome.voids is not None:

@@ -520,8 +520,13 @@ def fit_text(record: FitRecord) -> str:
 
 
 def _word(text: str) -> str:
-    """Return text as a quoted scalar, which YAML and JSON write alike."""
-    return json.dumps(text)
+    """Return text as a quoted scalar, as YAML and JSON write it alike.
+
+    Characters beyond U+FFFF stand as they are, for YAML knows no pairs of escapes; what cannot be
+    printed, such as bytes of a file name that are no text, becomes a question mark.
+    """
+    printable = "".join(letter if letter.isprintable() else "?" for letter in text)
+    return json.dumps(printable, ensure_ascii=False)
 
 
 def _words(texts: Collection[str]) -> str:
