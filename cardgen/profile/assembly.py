@@ -10,6 +10,7 @@ from cardgen.limits.kinds import CATEGORIES, Limit
 from cardgen.limits.statement import gauge_notes, state_all
 from cardgen.profile.digest import digest_of
 from cardgen.profile.document import Profile
+from cardgen.tables.back import Supply
 from cardgen.tables.card import Card, Section
 from cardgen.tables.choices import BreakIn, CardChoices
 from cardgen.tables.compose import Words, compose
@@ -106,7 +107,10 @@ def card_of(profile: Profile, learned: Learned | None = None) -> Card:
         sections=_sections(profile, learned),
         digest=card_digest(profile, learned),
     )
-    return compose(model_of(profile, learned), profile.card, words=words)
+    supply = None
+    if profile.fuel is not None:
+        supply = Supply(profile.fuel.usable, profile.fuel.reserve, profile.winds)
+    return compose(model_of(profile, learned), profile.card, words=words, supply=supply)
 
 
 def card_digest(profile: Profile, learned: Learned | None) -> str:

@@ -8,6 +8,7 @@ from enum import IntEnum
 import numpy as np
 from numpy.typing import NDArray
 
+from cardgen.tables.back import NOTHING_BESIDE, Back
 from cardgen.tables.choices import CardChoices
 
 
@@ -89,3 +90,4 @@ class Card:
     notes: tuple[str, ...]  # guard bands, temperature assumption and its largest error, ...
     digest: str  # 64 hex digits; the first 12 are printed
     sections: tuple[Section, ...] = ()  # limits in words with sources, gauges, evidence, cautions
+    back: Back = NOTHING_BESIDE

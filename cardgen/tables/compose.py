@@ -17,20 +17,26 @@ import numpy.typing as npt
 from cardgen.atmosphere import pressure_altitude_at_density_altitude, standard_temperature
 from cardgen.cruise import CruiseStatus
 from cardgen.limits import Findings, Judgement, Verdict
-from cardgen.limits.bars import bars_of
+from cardgen.limits.bars import bars_of, letter
+from cardgen.tables.back import Back, Chart, Supply
+from cardgen.tables.best import best_tables
 from cardgen.tables.card import Card, CardTable, CellState, Reason, Section
-from cardgen.tables.choices import BreakIn, CardChoices
+from cardgen.tables.chart import Charted, charted, power_chart, speed_chart
+from cardgen.tables.choices import BreakIn, CardChoices, UnitSet
 from cardgen.tables.printed import (
     decimals,
     fuel_flow_in,
+    message_units,
     pressure_from,
     rounded,
     rounded_down,
     rounded_up,
     temperature_step_in,
 )
+from cardgen.tables.range import range_tables
 from cardgen.tables.rows import situation_of
 from cardgen.tables.solution import Model, Situation, Solution, solve
+from cardgen.tables.temperature import row_table
 from cardgen.tables.verdict import judge
 from cardgen.units import to_unit
 
@@ -77,7 +83,9 @@ class _Block:
     tolerance: tuple[FloatArray, FloatArray, FloatArray]  # SI
 
 
-def compose(model: Model, choices: CardChoices, *, words: Words) -> Card:
+def compose(
+    model: Model, choices: CardChoices, *, words: Words, supply: Supply | None = None
+) -> Card:
     """Compute a card.
 
     Parameters
@@ -88,6 +96,8 @@ def compose(model: Model, choices: CardChoices, *, words: Words) -> Card:
         What the card shows [-]
     words : Words
         What it says besides [-]
+    supply : Supply, optional
+        Fuel and winds for range and endurance; without it the card gives neither and says so [-]
 
     Returns
     -------
@@ -95,11 +105,27 @@ def compose(model: Model, choices: CardChoices, *, words: Words) -> Card:
         Its content, rounded as printed [-]
     """
     blocks = [_block(model, choices, model.mixture_index(name)) for name in choices.mixtures]
+    drawn = [charted(model, choices, mixture=block.mixture) for block in blocks]
     barred = bars_of([block.findings for block in blocks])
+    reasons = [Reason(bar.letter, bar.text, bar.source) for bar in barred.reasons]
     tables = tuple(
         table
-        for block, reasons in zip(blocks, barred.index, strict=True)
-        for table in _tables(model, choices, block, reasons)
+        for block, index in zip(blocks, barred.index, strict=True)
+        for table in _tables(model, choices, block, index)
+    )
+    charts: list[Chart | None] = [
+        power_chart(model, choices, chart, reasons=index)
+        for chart, index in zip(drawn, _lettered(drawn, reasons), strict=True)
+    ]
+    charts.append(speed_chart(model, choices))
+    density = model.subject.aircraft.engine.fuel_density
+    back = Back(
+        rows=row_table(choices, tables, recovery=model.gauges.temperature_recovery),
+        ranges=()
+        if supply is None
+        else range_tables(tables, supply, units=choices.units, fuel_density=density),
+        best=best_tables(model, choices),
+        charts=tuple(chart for chart in charts if chart is not None),
     )
     notes = (*_temperature_notes(model, choices, blocks), _humidity_note(choices))
     unchecked = Section(
@@ -110,13 +136,38 @@ def compose(model: Model, choices: CardChoices, *, words: Words) -> Card:
         choices=choices,
         decimals=decimals(choices.units),
         tables=tables,
-        reasons=tuple(Reason(bar.letter, bar.text, bar.source) for bar in barred.reasons),
+        reasons=tuple(reasons),
         percent_of=words.percent_of,
         stamps=words.stamps,
         notes=notes,
         digest=words.digest,
-        sections=(*words.sections, unchecked),
+        sections=(*words.sections, *_fuel_section(supply), unchecked),
+        back=back,
     )
+
+
+def _lettered(drawn: Sequence[Charted], reasons: list[Reason]) -> list[npt.NDArray[np.int16]]:
+    """Index of the reason behind every charted setting; a reason no table has is added to them."""
+    barred = bars_of([chart.findings for chart in drawn])
+    places = []
+    for bar in barred.reasons:
+        known = [
+            k for k, one in enumerate(reasons) if (one.text, one.source) == (bar.text, bar.source)
+        ]
+        if not known:
+            known = [len(reasons)]
+            reasons.append(Reason(letter(known[0]), bar.text, bar.source))
+        places.append(known[0])
+    renumber = np.array([*places, -1], dtype=np.int16)
+    return [renumber[index] for index in barred.index]
+
+
+def _fuel_section(supply: Supply | None) -> tuple[Section, ...]:
+    """What the card says where it gives no range and endurance."""
+    if supply is not None:
+        return ()
+    words = "Not given: the profile states no usable fuel and reserve."
+    return (Section("Range and endurance", (words,)),)
 
 
 def _situation(model: Model, choices: CardChoices, mixture: int) -> Situation:
@@ -146,13 +197,13 @@ def _block(model: Model, choices: CardChoices, mixture: int) -> _Block:
     # At full throttle the lever is against its stop; what the gauge then reads is information.
     nearest = np.where(full, rounded_down(reads, places), rounded(reads, places))
     other = np.where(nearest > reads, rounded_down(reads, places), rounded_up(reads, places))
-    findings = _judged(model, situation, exact=exact, printed=nearest, unit=unit)
-    apart = _judged(model, situation, exact=exact, printed=other, unit=unit)
+    findings = _judged(model, situation, exact=exact, printed=nearest, units=choices.units)
+    apart = _judged(model, situation, exact=exact, printed=other, units=choices.units)
     # Near a limit the step away from it is taken, if that is allowed.
     swap = ~full & (findings.verdict == Verdict.OUTSIDE) & (apart.verdict != Verdict.OUTSIDE)
     if swap.any():
         nearest = np.where(swap, other, nearest)
-        findings = _judged(model, situation, exact=exact, printed=nearest, unit=unit)
+        findings = _judged(model, situation, exact=exact, printed=nearest, units=choices.units)
     tolerance = exact.tolerance
     return _Block(
         mixture=mixture,
@@ -164,11 +215,13 @@ def _block(model: Model, choices: CardChoices, mixture: int) -> _Block:
 
 
 def _judged(
-    model: Model, situation: Situation, *, exact: Solution, printed: FloatArray, unit: str
+    model: Model, situation: Situation, *, exact: Solution, printed: FloatArray, units: UnitSet
 ) -> Findings:
     """Findings at printed manifold pressures, at full throttle where that is it."""
     full = exact.point.full_throttle
-    asked = np.where(full, exact.indicated_manifold_pressure, pressure_from(printed, unit))
+    asked = np.where(
+        full, exact.indicated_manifold_pressure, pressure_from(printed, units.pressure)
+    )
     solution = solve(
         model,
         situation,
@@ -176,7 +229,7 @@ def _judged(
         indicated_pressure=asked,
         with_tolerance=False,
     )
-    return judge(model, solution)
+    return judge(model, solution, units=message_units(units))
 
 
 def _with_break_in(findings: Findings, solution: Solution, band: BreakIn | None) -> Findings:

@@ -1,0 +1,509 @@
+"""The numbers behind a card's charts: what to draw, not how.
+
+For each mixture one chart shows percent power against altitude, a panel for each rpm: lines of one
+manifold pressure, the full-throttle line that ends them, and the ground that limits forbid. Another
+shows fuel flow against airspeed, a panel for each mixture, with lines of one distance on a unit of
+fuel.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+from itertools import pairwise
+from typing import Final
+
+import numpy as np
+import numpy.typing as npt
+
+from cardgen.limits import Findings, Verdict
+from cardgen.tables.back import Area, Axis, Chart, Curve, Panel
+from cardgen.tables.choices import CardChoices, UnitSet
+from cardgen.tables.printed import fuel_flow_in, message_units, pressure_from
+from cardgen.tables.range import fuel_unit
+from cardgen.tables.rows import situation_of
+from cardgen.tables.solution import Model, Solution, solve
+from cardgen.tables.verdict import judge
+from cardgen.units import to_unit
+
+FloatArray = npt.NDArray[np.float64]
+BoolArray = npt.NDArray[np.bool_]
+Point = tuple[float, float]
+
+ALTITUDES: Final = 13
+"""Places at which the lines of the power chart are computed."""
+
+FLIGHT_LEVELS: Final = 3
+"""Most altitudes drawn in the speed chart; more would run into each other."""
+
+LEAST_DRAWN, MORE_DRAWN, POWER_STEP = 0.40, 0.10, 0.02
+"""Where lines of the speed chart begin, how far beyond the tables they go, and in which steps."""
+
+_POWER_STEP: Final = 10.0  # between the named percent powers [%]
+_BEYOND: Final = 3.0  # a power that no engine gives, to ask for full throttle [-]
+
+# Between named pressures, and between the pressures at which limits are asked: fine enough that the
+# edge of forbidden ground lies within a gauge's width.
+_PRESSURE_STEPS: Final = {
+    "inHg": (2.0, 0.25),
+    "cmHg": (5.0, 0.5),
+    "mmHg": (50.0, 5.0),
+    "hPa": (50.0, 10.0),
+    "mbar": (50.0, 10.0),
+    "kPa": (5.0, 1.0),
+}
+_ALTITUDE_STEPS: Final = {"ft": 2000.0, "m": 500.0}
+_NICE: Final = (1.0, 2.0, 5.0)
+
+
+@dataclass(frozen=True, slots=True)
+class Charted:
+    """The settings of a power chart, solved and judged; shape (rpm, altitude, pressure).
+
+    Parameters
+    ----------
+    mixture : int
+        Index of the mixture [-]
+    altitude : ndarray
+        In the card's unit [-]
+    pressure : ndarray
+        In the card's unit [-]
+    solution : Solution
+        Settings at those pressures [-]
+    ceiling : Solution
+        Full throttle; shape (rpm, altitude, 1) [-]
+    findings : Findings
+        What the limits say of the settings [-]
+    """
+
+    mixture: int
+    altitude: FloatArray
+    pressure: FloatArray
+    solution: Solution
+    ceiling: Solution
+    findings: Findings
+
+
+def charted(model: Model, choices: CardChoices, *, mixture: int) -> Charted:
+    """Solve and judge what a power chart shows.
+
+    Parameters
+    ----------
+    model : Model
+        The aircraft [-]
+    choices : CardChoices
+        What the card shows [-]
+    mixture : int
+        Index of the mixture [-]
+
+    Returns
+    -------
+    Charted
+        Ready to be drawn once reasons have their letters [-]
+    """
+    units = choices.units
+    by_density = choices.altitude_kind == "density"
+    altitude = np.linspace(min(choices.altitude[0], 0.0), choices.altitude[-1], ALTITUDES)
+    if choices.altitude[-1] <= choices.altitude[0]:
+        altitude = np.linspace(0.0, max(choices.altitude[-1], 1000.0), ALTITUDES)
+    situation = situation_of(
+        altitude[:, None],
+        np.zeros(1),
+        by_density=by_density,
+        mass=np.array(choices.mass[-1]),
+        mixture=mixture,
+    )
+    rpm = np.array(choices.rpm)[:, None, None]
+    ceiling = solve(
+        model, situation, indicated_rpm=rpm, power_fraction=_BEYOND, with_tolerance=False
+    )
+    floor = solve(
+        model,
+        situation,
+        indicated_rpm=rpm,
+        power_fraction=min(choices.power_fraction) - 0.5 * _POWER_STEP / 100.0,
+        with_tolerance=False,
+    )
+    _, fine = _PRESSURE_STEPS[units.pressure]
+    low, _ = _span(to_unit(floor.indicated_manifold_pressure, units.pressure))
+    _, high = _span(to_unit(ceiling.indicated_manifold_pressure, units.pressure))
+    pressure = fine * np.arange(np.floor(low / fine), np.ceil(high / fine) + 1.0)
+    solution = solve(
+        model,
+        situation,
+        indicated_rpm=rpm,
+        indicated_pressure=pressure_from(pressure, units.pressure),
+        with_tolerance=False,
+    )
+    return Charted(
+        mixture=mixture,
+        altitude=np.asarray(to_unit(altitude, units.altitude)),
+        pressure=pressure,
+        solution=solution,
+        ceiling=ceiling,
+        findings=_within_reach(judge(model, solution, units=message_units(units)), solution),
+    )
+
+
+def _within_reach(findings: Findings, solution: Solution) -> Findings:
+    """Findings with nothing said beyond full throttle, where no line is drawn either."""
+    reached = ~solution.point.full_throttle & np.isfinite(solution.point.power)
+    judgements = tuple(
+        replace(one, verdict=np.where(reached, one.verdict, np.int8(Verdict.INSIDE)))
+        for one in findings.judgements
+    )
+    return replace(findings, judgements=judgements)
+
+
+def _span(values: npt.ArrayLike) -> tuple[float, float]:
+    """Least and greatest of what is solved, zero where nothing is."""
+    known = np.asarray(values)[np.isfinite(values)]
+    return (float(known.min()), float(known.max())) if known.size else (0.0, 0.0)
+
+
+def power_chart(
+    model: Model, choices: CardChoices, charted: Charted, *, reasons: npt.NDArray[np.int16]
+) -> Chart | None:
+    """Percent power against altitude with one mixture.
+
+    Parameters
+    ----------
+    model : Model
+        The aircraft [-]
+    choices : CardChoices
+        What the card shows [-]
+    charted : Charted
+        Its settings [-]
+    reasons : ndarray
+        Index of the reason that forbids each, -1 where none does [-]
+
+    Returns
+    -------
+    Chart or None
+        None where nothing can be drawn [-]
+    """
+    units = choices.units
+    percent = 100.0 * np.where(
+        charted.solution.point.full_throttle, np.nan, charted.solution.power_fraction
+    )
+    ceiling = 100.0 * charted.ceiling.power_fraction[..., 0]
+    if not np.isfinite(ceiling).any():
+        return None
+    up = _power_axis(choices, ceiling)
+    name = model.subject.mixtures[charted.mixture].name
+    kind = "Density" if choices.altitude_kind == "density" else "Pressure"
+    across = Axis(
+        f"{kind} altitude, {units.altitude}",
+        float(charted.altitude[0]),
+        float(charted.altitude[-1]),
+        _multiples(
+            float(charted.altitude[0]), float(charted.altitude[-1]), _ALTITUDE_STEPS[units.altitude]
+        ),
+    )
+    covered = _covered(model, charted.findings)
+    panels = tuple(
+        Panel(
+            name=f"{rpm:.0f} rpm",
+            curves=(
+                *_pressure_lines(
+                    charted,
+                    k,
+                    percent=percent[k],
+                    ceiling=ceiling[k],
+                    covered=covered[k],
+                    units=units,
+                ),
+                *_ceiling_line(charted, ceiling[k], up),
+            ),
+            areas=tuple(_areas(charted, percent[k], ceiling[k], reasons[k])),
+        )
+        for k, rpm in enumerate(choices.rpm)
+    )
+    return Chart(
+        title=f"Power and altitude, {name}",
+        lead=(
+            f"A panel for each rpm. Thin lines: manifold pressure, {units.pressure}, as the gauge "
+            "reads. Thick line: full throttle. Hatched: forbidden, see the letter. Standard "
+            "temperature. Set by the tables, not from here."
+        ),
+        across=across,
+        up=up,
+        panels=panels,
+    )
+
+
+def _power_axis(choices: CardChoices, ceiling: FloatArray) -> Axis:
+    """Percent powers from below the least asked to above the most there is."""
+    least = 100.0 * min(choices.power_fraction)
+    most = min(max(100.0 * max(choices.power_fraction) + 5.0, float(np.nanmax(ceiling))), 110.0)
+    low = _POWER_STEP * np.floor((least - 5.0) / _POWER_STEP)
+    high = _POWER_STEP * np.ceil(most / _POWER_STEP)
+    return Axis("% power", float(low), float(high), _multiples(low, high, _POWER_STEP))
+
+
+def _multiples(low: float, high: float, step: float) -> tuple[float, ...]:
+    """Multiples of a step from one value to another."""
+    count = np.arange(np.ceil(low / step - 1e-9), np.floor(high / step + 1e-9) + 1.0)
+    return tuple(float(step * k) + 0.0 for k in count)  # + 0.0 makes -0.0 the zero it is
+
+
+def _covered(model: Model, findings: Findings) -> BoolArray:
+    """Settings that the evidence covers, all of them where there is no fit."""
+    covered = np.ones(findings.shape, dtype=np.bool_)
+    if model.knowledge.covers is None:
+        return covered
+    for judgement in findings.judgements:
+        if judgement.limit == "evidence":
+            covered &= np.asarray(judgement.verdict == Verdict.INSIDE)
+    return covered
+
+
+def _pressure_lines(
+    charted: Charted,
+    rpm: int,
+    *,
+    percent: FloatArray,
+    ceiling: FloatArray,
+    covered: BoolArray,
+    units: UnitSet,
+) -> Iterator[Curve]:
+    """Lines of one manifold pressure, drawn to full throttle and to the end of the evidence."""
+    step, _ = _PRESSURE_STEPS[units.pressure]
+    full = to_unit(charted.ceiling.indicated_manifold_pressure[rpm, :, 0], units.pressure)
+    full = np.asarray(full)
+    for value in _multiples(float(charted.pressure[0]), float(charted.pressure[-1]), step):
+        place = int(np.argmin(np.abs(charted.pressure - value)))
+        points: list[Point] = [
+            (float(x), float(y))
+            for x, y, seen in zip(
+                charted.altitude, percent[:, place], covered[:, place], strict=True
+            )
+            if seen and np.isfinite(y)
+        ]
+        end = _meeting(charted.altitude, full, ceiling, value)
+        if points and end is not None and points[-1][0] < end[0]:
+            step_width = float(charted.altitude[1] - charted.altitude[0])
+            if end[0] - points[-1][0] <= 1.001 * step_width:
+                points.append(end)
+        if len(points) >= 2:
+            yield Curve("setting", f"{value:g}", tuple(points))
+
+
+def _meeting(
+    altitude: FloatArray, full: FloatArray, ceiling: FloatArray, pressure: float
+) -> Point | None:
+    """Where a line of one manifold pressure meets full throttle."""
+    for k, (one, other) in enumerate(pairwise(full)):
+        if np.isfinite(one) and np.isfinite(other) and one >= pressure > other:
+            share = (one - pressure) / (one - other)
+            x = altitude[k] + share * (altitude[k + 1] - altitude[k])
+            y = ceiling[k] + share * (ceiling[k + 1] - ceiling[k])
+            return float(x), float(y)
+    return None
+
+
+def _ceiling_line(charted: Charted, ceiling: FloatArray, up: Axis) -> Iterator[Curve]:
+    """The full-throttle line."""
+    points = tuple(
+        (float(x), float(y))
+        for x, y in zip(charted.altitude, ceiling, strict=True)
+        if np.isfinite(y) and y >= up.low
+    )
+    if len(points) >= 2:
+        yield Curve("ceiling", "full throttle", points)
+
+
+# ------------------------------------------------------------------------------- forbidden ground
+
+
+def _areas(
+    charted: Charted, percent: FloatArray, ceiling: FloatArray, reasons: npt.NDArray[np.int16]
+) -> Iterator[Area]:
+    """Forbidden ground of one panel, reason by reason."""
+    edges = _edges(percent, ceiling)
+    for reason in sorted({int(value) for value in np.unique(reasons)} - {-1}):
+        pieces = tuple(_pieces(charted.altitude, edges, reasons == reason))
+        if pieces:
+            yield Area(reason, pieces)
+
+
+def _edges(percent: FloatArray, ceiling: FloatArray) -> FloatArray:
+    """Power half way between neighbouring pressures; shape (altitude, pressure + 1).
+
+    Beyond full throttle it is that of full throttle.
+    """
+    top = ceiling[:, None]
+    known = np.where(np.isfinite(percent), percent, top)
+    first = known[:, :1] - 0.5 * (known[:, 1:2] - known[:, :1])
+    between = 0.5 * (known[:, 1:] + known[:, :-1])
+    last = np.broadcast_to(top, first.shape)
+    return np.asarray(np.minimum(np.concatenate([first, between, last], axis=1), top))
+
+
+def _pieces(
+    altitude: FloatArray, edges: FloatArray, forbidden: BoolArray
+) -> Iterator[tuple[Point, ...]]:
+    """Strips between neighbouring altitudes: runs of pressures forbidden at both or at either."""
+    for k in range(altitude.size - 1):
+        middle = 0.5 * (altitude[k] + altitude[k + 1])
+        both = forbidden[k] & forbidden[k + 1]
+        for first, last in _runs(both):
+            ends = (altitude[k], altitude[k + 1])
+            yield _strip(ends, edges[k], edges[k + 1], run=(first, last))
+        half = 0.5 * (edges[k] + edges[k + 1])
+        for first, last in _runs(forbidden[k] & ~both):
+            yield _strip((altitude[k], middle), edges[k], half, run=(first, last))
+        for first, last in _runs(forbidden[k + 1] & ~both):
+            yield _strip((middle, altitude[k + 1]), half, edges[k + 1], run=(first, last))
+
+
+def _runs(flags: BoolArray) -> Iterator[tuple[int, int]]:
+    """First and one past the last of every run of true flags."""
+    steps = np.diff(np.concatenate([[0], flags.astype(np.int8), [0]]))
+    yield from zip(
+        np.flatnonzero(steps == 1).tolist(), np.flatnonzero(steps == -1).tolist(), strict=True
+    )
+
+
+def _strip(
+    ends: tuple[float, float], low: FloatArray, high: FloatArray, *, run: tuple[int, int]
+) -> tuple[Point, ...]:
+    """Corners of a strip."""
+    (left, right), (first, last) = ends, run
+    return (
+        (float(left), float(low[first])),
+        (float(right), float(high[first])),
+        (float(right), float(high[last])),
+        (float(left), float(low[last])),
+    )
+
+
+# ----------------------------------------------------------------------------------- speed chart
+
+
+def speed_chart(model: Model, choices: CardChoices) -> Chart | None:
+    """Fuel flow against airspeed, a panel for each mixture.
+
+    Parameters
+    ----------
+    model : Model
+        The aircraft [-]
+    choices : CardChoices
+        What the card shows [-]
+
+    Returns
+    -------
+    Chart or None
+        None where nothing can be drawn [-]
+    """
+    units = choices.units
+    rpm = choices.rpm[len(choices.rpm) // 2]
+    levels = _levels(choices)
+    drawn = [
+        (name, _speed_curves(model, choices, mixture=model.mixture_index(name), rpm=rpm))
+        for name in choices.mixtures
+    ]
+    points = [point for _, curves in drawn for curve in curves for point in curve.points]
+    if not points:
+        return None
+    speeds, flows = zip(*points, strict=True)
+    across = _axis(f"True airspeed, {units.speed}", min(speeds), max(speeds), 5)
+    up = _axis(f"Fuel flow, {units.fuel_flow}", min(flows), max(flows), 4)
+    distance = {"kt": "nm", "mph": "mi", "km/h": "km"}[units.speed]
+    per = f"{distance}/{fuel_unit(units.fuel_flow)}"
+    rays = tuple(_rays(across, up, per))
+    at = ", ".join(f"{float(to_unit(level, units.altitude)):.0f}" for level in levels)
+    kind = "density" if choices.altitude_kind == "density" else "pressure"
+    return Chart(
+        title="Fuel flow and airspeed",
+        lead=(
+            f"At {rpm:.0f} rpm and {kind} altitudes {at} {units.altitude}, heaviest mass of this "
+            f"card, standard temperature. Thick lines: fuel flow, ending where limits or evidence "
+            f"end. Thin lines: {per} in still air."
+        ),
+        across=across,
+        up=up,
+        panels=tuple(Panel(name, (*rays, *curves)) for name, curves in drawn),
+    )
+
+
+def _levels(choices: CardChoices) -> tuple[float, ...]:
+    """Lowest, middle and highest altitude of the card [m]."""
+    altitude = choices.altitude
+    places = sorted({0, (len(altitude) - 1) // 2, len(altitude) - 1})
+    return tuple(altitude[place] for place in places)[:FLIGHT_LEVELS]
+
+
+def _speed_curves(
+    model: Model, choices: CardChoices, *, mixture: int, rpm: float
+) -> tuple[Curve, ...]:
+    """Fuel flow against airspeed at each level."""
+    units = choices.units
+    levels = _levels(choices)
+    least, most = LEAST_DRAWN, max(choices.power_fraction) + MORE_DRAWN
+    if choices.break_in is not None:
+        least, most = choices.break_in.least_power_fraction, max(choices.power_fraction)
+    power = np.arange(least, most + 0.5 * POWER_STEP, POWER_STEP)
+    solution = solve(
+        model,
+        situation_of(
+            np.array(levels)[:, None],
+            np.zeros(1),
+            by_density=choices.altitude_kind == "density",
+            mass=np.array(choices.mass[-1]),
+            mixture=mixture,
+        ),
+        indicated_rpm=rpm,
+        power_fraction=power,
+        with_tolerance=False,
+    )
+    findings = judge(model, solution)
+    density = model.subject.aircraft.engine.fuel_density
+    seen = (
+        (findings.verdict != Verdict.OUTSIDE)
+        & _covered(model, findings)
+        & ~solution.point.full_throttle
+        & np.isfinite(solution.point.power)
+    )
+    speed = np.asarray(to_unit(solution.point.true_airspeed, units.speed))
+    flow = fuel_flow_in(solution.point.fuel_flow, units.fuel_flow, fuel_density=density)
+    curves = []
+    for k, level in enumerate(levels):
+        points = tuple(
+            (float(x), float(y)) for x, y in zip(speed[k][seen[k]], flow[k][seen[k]], strict=True)
+        )
+        if len(points) >= 2:
+            label = f"{float(to_unit(level, units.altitude)):.0f} {units.altitude}"
+            curves.append(Curve("setting", label, points))
+    return tuple(curves)
+
+
+def _axis(label: str, low: float, high: float, count: int) -> Axis:
+    """An axis about values, with some round ticks."""
+    step = _nice((high - low) / count)
+    start, end = step * np.floor(low / step), step * np.ceil(high / step + 0.05)
+    return Axis(label, float(start), float(end), _multiples(float(start), float(end), step))
+
+
+def _nice(raw: float) -> float:
+    """The least of 1, 2, 5, 10, ... that is not below a number."""
+    if raw <= 0.0:
+        return 1.0
+    decade: float = 10.0 ** math.floor(math.log10(raw))
+    steps = (n * decade for n in _NICE if n * decade >= raw * 0.999)
+    return next(steps, 10.0 * decade)
+
+
+def _rays(across: Axis, up: Axis, per: str) -> Iterator[Curve]:
+    """Lines of one distance on a unit of fuel, within the axes."""
+    least = across.low / up.high
+    most = across.high / max(up.low, 1e-9)
+    for value in _multiples(least, most, _nice((most - least) / 7.0)):
+        if value <= 0.0:
+            continue
+        start = max(across.low, up.low * value)
+        end = min(across.high, up.high * value)
+        if end - start > 0.12 * (across.high - across.low):
+            points = ((start, start / value), (end, end / value))
+            yield Curve("ray", f"{value:g} {per}", points)
