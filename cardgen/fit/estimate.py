@@ -21,7 +21,7 @@ import numpy.typing as npt
 
 from cardgen.errors import NoSolutionError
 from cardgen.fit.evidence import QUANTITIES, Evidence, standard_deviations
-from cardgen.fit.model import Subject, predict
+from cardgen.fit.model import Subject, predict, predict_continued
 from cardgen.fit.parameters import parameters, prior_covariance, prior_mean
 
 FloatArray = npt.NDArray[np.float64]
@@ -33,6 +33,7 @@ SCATTER_WEIGHT: Final = 6.0
 """How many rows of evidence the assumed scatter counts for, against the scatter seen [-]."""
 
 _STEP: Final = 1e-3  # of a prior deviation, for central differences
+_APPROACH: Final = (10.0,)  # deviations of the evidence, over the real ones, on the way
 
 
 @dataclass(frozen=True, slots=True)
@@ -153,26 +154,43 @@ def estimate(
     lower = np.array([parameter.lower for parameter in listed])
     upper = np.array([parameter.upper for parameter in listed])
     step = np.minimum(_STEP * deviation, 0.25 * (upper - lower))
-    _refuse_unanswered(predict(subject, evidence, values=prior), known, evidence)
+    _refuse_unanswered(predict_continued(subject, evidence, values=prior), known, evidence)
 
-    def residuals(values: FloatArray) -> FloatArray:
-        plain = ((predict(subject, evidence, values=values) - read) / expected)[known]
-        return np.concatenate([_robust(plain), whiten @ (values - prior)])
+    def errors(values: FloatArray, deviations: FloatArray) -> FloatArray:
+        said = predict_continued(subject, evidence, values=values)
+        return np.asarray(((said - read) / deviations)[known])
 
-    def jacobian(values: FloatArray) -> FloatArray:
-        plain = ((predict(subject, evidence, values=values) - read) / expected)[known]
-        slope = _slopes(subject, evidence, values=values, step=step) / expected[..., None]
-        return np.concatenate([_robust_slope(plain)[:, None] * slope[known], whiten])
+    def improved(start: FloatArray, *, blunt: float, tolerance: float) -> FloatArray:
+        """Minimise from a start, with the deviations of the evidence `blunt` times as large."""
+        deviations = expected * blunt
 
-    found = least_squares(
-        residuals,
-        np.clip(prior, lower + 1e-9, upper - 1e-9),
-        jac=jacobian,
-        bounds=(lower, upper),
-        x_scale=deviation,
-        xtol=1e-10,
-        ftol=1e-10,
-    ).x
+        def residuals(values: FloatArray) -> FloatArray:
+            return np.concatenate([_robust(errors(values, deviations)), whiten @ (values - prior)])
+
+        def jacobian(values: FloatArray) -> FloatArray:
+            bend = _robust_slope(errors(values, deviations))
+            slope = _slopes(subject, evidence, values=values, step=step) / deviations[..., None]
+            return np.concatenate([bend[:, None] * slope[known], whiten])
+
+        return np.asarray(
+            least_squares(
+                residuals,
+                start,
+                jac=jacobian,
+                bounds=(lower, upper),
+                x_scale=deviation,
+                xtol=tolerance,
+                ftol=tolerance,
+            ).x
+        )
+
+    # The robust loss is flat far from its middle and would stop there: approach it from evidence
+    # that is taken for less exact, which the squares near the middle of the loss still see.
+    found = np.clip(prior, lower + 1e-9, upper - 1e-9)
+    for blunt in _APPROACH:
+        found = improved(found, blunt=blunt, tolerance=1e-3)
+    found = improved(found, blunt=1.0, tolerance=1e-10)
+    _refuse_unanswered(predict(subject, evidence, values=found), known, evidence)
     return _described(
         subject, evidence, values=found, prior=prior, spread=spread, step=step, expected=expected
     )
@@ -212,7 +230,9 @@ def _slopes(
 ) -> FloatArray:
     """Derivatives of what the model says by each parameter, shape (rows, 3, p)."""
     shift = np.diag(step)
-    both = predict(subject, evidence, values=np.concatenate([values + shift, values - shift]))
+    both = predict_continued(
+        subject, evidence, values=np.concatenate([values + shift, values - shift])
+    )
     count = len(values)
     change = (both[:count] - both[count:]) / (2.0 * step[:, None, None])
     return np.nan_to_num(np.moveaxis(change, 0, -1))

@@ -9,7 +9,10 @@ import numpy as np
 import numpy.typing as npt
 
 from cardgen.aircraft import Aircraft, Condition, Setting
-from cardgen.cruise import CruisePoint, solve_cruise
+from cardgen.airframe import dynamic_pressure_of_least_power, least_dynamic_pressure
+from cardgen.atmosphere import density
+from cardgen.constants import GRAVITY
+from cardgen.cruise import CruisePoint, balance, solve_cruise
 from cardgen.engine import Mixture
 from cardgen.fit.evidence import Evidence
 from cardgen.fit.parameters import applied
@@ -74,6 +77,55 @@ def predict(subject: Subject, evidence: Evidence, *, values: FloatArray) -> Floa
     return np.stack([point.manifold_pressure, point.fuel_flow, point.true_airspeed], axis=-1)
 
 
+def predict_continued(subject: Subject, evidence: Evidence, *, values: FloatArray) -> FloatArray:
+    """The same, continued to where there is no level flight, so that a search can cross it.
+
+    Parameters
+    ----------
+    subject : Subject
+        What is fitted [-]
+    evidence : Evidence
+        The rows, n of them [-]
+    values : ndarray, shape (p,) or (k, p)
+        One or k sets of parameters [-]
+
+    Returns
+    -------
+    ndarray, shape (n, 3) or (k, n, 3)
+        As `predict`; where drag exceeds thrust at every airspeed, what holds at the airspeed of
+        least power, at which level flight ends: there is no jump at that border [SI]
+    """
+    predicted = predict(subject, evidence, values=values)
+    lost = np.asarray(np.isnan(predicted).any(axis=-1))
+    if not lost.any():
+        return predicted
+    rows = np.flatnonzero(lost.reshape(-1, len(evidence)).any(axis=0))
+    short = evidence.rows(rows)
+    aircraft, mixtures = applied(subject.aircraft, subject.mixtures, values=values)
+    weight = short.mass * GRAVITY
+    slowest = np.maximum(
+        least_dynamic_pressure(aircraft.airframe, weight=weight),
+        dynamic_pressure_of_least_power(aircraft.airframe, weight=weight),
+    )
+    condition, setting = _asked(mixtures, short)
+    air = density(short.pressure, short.temperature)
+    point = balance(aircraft, condition, setting=setting, true_airspeed=np.sqrt(2 * slowest / air))
+    ends = np.stack([point.manifold_pressure, point.fuel_flow, point.true_airspeed], axis=-1)
+    predicted[..., rows, :] = np.where(lost[..., rows, None], ends, predicted[..., rows, :])
+    return predicted
+
+
+def _asked(mixtures: Sequence[Mixture], evidence: Evidence) -> tuple[Condition, Setting]:
+    """Where rows were flown, and what was asked there."""
+    setting = Setting(
+        evidence.rpm,
+        mixture_of_rows(mixtures, evidence.mixture),
+        power=evidence.power,
+        manifold_pressure=evidence.manifold_pressure,
+    )
+    return Condition(evidence.pressure, evidence.temperature, evidence.mass), setting
+
+
 def cruise_of_rows(subject: Subject, evidence: Evidence, *, values: FloatArray) -> CruisePoint:
     """Solve the cruise of rows of evidence.
 
@@ -92,11 +144,5 @@ def cruise_of_rows(subject: Subject, evidence: Evidence, *, values: FloatArray) 
         Arrays of shape (n,) or (k, n) [-]
     """
     aircraft, mixtures = applied(subject.aircraft, subject.mixtures, values=values)
-    condition = Condition(evidence.pressure, evidence.temperature, evidence.mass)
-    setting = Setting(
-        evidence.rpm,
-        mixture_of_rows(mixtures, evidence.mixture),
-        power=evidence.power,
-        manifold_pressure=evidence.manifold_pressure,
-    )
+    condition, setting = _asked(mixtures, evidence)
     return solve_cruise(aircraft, condition, setting=setting)
