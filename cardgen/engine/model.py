@@ -88,7 +88,7 @@ class NaturalInduction:
         Share of the flight impact pressure that reaches the throttle [-]
     """
 
-    loss: Floats = 0.02
+    loss: Floats = 0.04
     ram_recovery: Floats = 0.7
 
 

@@ -63,7 +63,9 @@ _ENGINE: Final = (
     Parameter("back_pressure_effect", "engine", 0.5, 0.0, 4.0),
     # Charts of makers range from the square root (0.5) to nearly the first power.
     Parameter("charge_temperature_exponent", "engine", 0.12, 0.0, 1.2),
-    Parameter("induction_loss", "engine", 0.01, 0.0, 0.12),
+    # Full throttle on the ground: from hardly below ambient to 28.0 inHg (6 %), which a chart of a
+    # 210 hp engine shows (SFTE Reference Handbook 2013, figure 10.2a).
+    Parameter("induction_loss", "engine", 0.02, 0.0, 0.15),
     Parameter("ram_recovery", "engine", 0.25, 0.0, 1.2),
 )
 # Published body factors run from 0.91 to 0.98.
