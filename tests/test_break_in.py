@@ -11,7 +11,7 @@ from pypdf import PdfReader
 
 from cardgen.errors import DataError
 from cardgen.profile import load_profile
-from cardgen.profile.assembly import card_of
+from cardgen.profile.card_content import card_of
 from cardgen.render.produce import produce
 from cardgen.tables.card import CellState
 

@@ -173,7 +173,7 @@ def _make_one(job: _Job) -> _Answer:
 def _released(job: _Job) -> Outcome:
     """Make the card of one profile unless it stands."""
     profile, learned = load(str(job.file), fit_file=job.fit_file, no_fit=job.no_fit)
-    from cardgen.profile.assembly import card_digest, card_of, part_digests  # noqa: PLC0415
+    from cardgen.profile.assembly import card_digest, part_digests  # noqa: PLC0415
     from cardgen.render.program import program_digest  # noqa: PLC0415
     from cardgen.render.release import Fingerprint, release_card, standing  # noqa: PLC0415
 
@@ -189,6 +189,7 @@ def _released(job: _Job) -> Outcome:
         )
         if stands is not None:
             return stands
+    from cardgen.profile.card_content import card_of  # noqa: PLC0415
     from cardgen.render.data import content_digest  # noqa: PLC0415
     from cardgen.render.produce import produce  # noqa: PLC0415
 

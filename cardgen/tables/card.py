@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from cardgen.tables.back import NOTHING_BESIDE, Back
 from cardgen.tables.choices import CardChoices
+from cardgen.tables.printed import Decimals
 
 
 class CellState(IntEnum):
@@ -64,15 +65,6 @@ class Section:
 
     title: str
     lines: tuple[str, ...]
-
-
-@dataclass(frozen=True, slots=True)
-class Decimals:
-    """Decimal places that pressure, fuel flow and speed are printed with."""
-
-    pressure: int = 1
-    fuel_flow: int = 1
-    speed: int = 0
 
 
 @dataclass(frozen=True, slots=True)

@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
 from cardgen.limits import MessageUnits
-from cardgen.tables.card import Decimals
 from cardgen.tables.choices import UnitSet
 from cardgen.units import find_unit, from_unit, to_unit
 
@@ -31,6 +31,15 @@ _PLACES: Final[Mapping[str, int]] = {
 # A value within this share of a printed step of a whole step is that step: floating-point noise
 # must not turn 10.0 into 10.1.
 _HAIR: Final = 1e-6
+
+
+@dataclass(frozen=True, slots=True)
+class Decimals:
+    """Decimal places that pressure, fuel flow and speed are printed with."""
+
+    pressure: int = 1
+    fuel_flow: int = 1
+    speed: int = 0
 
 
 def decimals(units: UnitSet) -> Decimals:
