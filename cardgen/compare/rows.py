@@ -38,6 +38,7 @@ COLUMNS: Final = (
     "density_altitude_ft",
     "weight_lb",
     "rpm",
+    "asked_percent_power",
     "old_percent_power",
     "new_percent_power",
     "old_power_hp",
@@ -49,7 +50,7 @@ COLUMNS: Final = (
     "old_status",
     "new_status",
 )
-"""Columns of a comparison; tolerances are 95 % half widths of the change."""
+"""Columns of a comparison; what is asked is of the newer rating, tolerances are of 95 %."""
 
 
 def change_columns(change: Change) -> dict[str, FloatArray | list[str]]:
@@ -84,6 +85,7 @@ def change_columns(change: Change) -> dict[str, FloatArray | list[str]]:
         "density_altitude_ft": run(new.density_altitude, FOOT),
         "weight_lb": run(situation.mass, POUND),
         "rpm": run(new.indicated_rpm),
+        "asked_percent_power": run(change.power_fraction, 0.01),
         "old_percent_power": run(old.power_fraction, 0.01),
         "new_percent_power": run(new.power_fraction, 0.01),
         "old_power_hp": run(old.point.power, HORSEPOWER),
