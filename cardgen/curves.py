@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 from itertools import pairwise
@@ -13,6 +14,11 @@ FloatArray = NDArray[np.float64]
 
 #: Places evaluated at once: few enough that every temporary stays in the processor's cache.
 _CHUNK = 4096
+#: Places up to which one array of all terms of a spline is faster than one term after the other.
+_FEW = 400
+
+#: Weights of the four coefficients of one variable.
+Weights = tuple[FloatArray, FloatArray, FloatArray, FloatArray]
 
 
 def _checked(x: tuple[float, ...], y: tuple[float, ...]) -> None:
@@ -191,7 +197,7 @@ def _spline_inverse(count: int) -> FloatArray:
     return inverse
 
 
-def spline_weights(t: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
+def spline_weights(t: FloatArray) -> Weights:
     """Values of the four cubic B-splines that cover a cell.
 
     Parameters
@@ -307,26 +313,52 @@ class SplineGrid:
             base *= cells + 3
             base += cell
             weights.append(spline_weights(place))
-        across, along = (self.size[1] + 3) * (self.size[2] + 3), self.size[2] + 3
-        index = np.empty_like(base)
-        term, line = np.empty(base.shape), np.empty(base.shape)
+        add_up = self._together if base.size <= _FEW else self._one_by_one
         for number, output in enumerate(outputs):
-            table = self.tables[output]
-            total = np.zeros(base.shape)
-            for first, weight_first in enumerate(weights[0]):
-                plane = np.zeros(base.shape)
-                for second, weight_second in enumerate(weights[1]):
-                    offset = first * across + second * along
-                    for third, weight_third in enumerate(weights[2]):
-                        np.add(base, offset + third, out=index)
-                        into = line if third == 0 else term
-                        np.take(table, index, out=into, mode="clip")
-                        into *= weight_third
-                        if third:
-                            line += term
-                    line *= weight_second
-                    plane += line
-                plane *= weight_first
-                total += plane
+            total = add_up(self.tables[output], base, weights)
             total[outside] = np.nan
             result[number] = total
+
+    def _together(
+        self, table: FloatArray, base: NDArray[np.intp], weights: Sequence[Weights]
+    ) -> FloatArray:
+        """Add up all 64 terms in one array: fewest calls, for few places."""
+        first, second, third = (np.stack(weight) for weight in weights)
+        terms = table[base + self._offsets().reshape(4, 4, 4, 1)]
+        terms *= third
+        plane = terms.sum(axis=2)
+        plane *= second
+        line = plane.sum(axis=1)
+        line *= first
+        total: FloatArray = line.sum(axis=0)
+        return total
+
+    def _one_by_one(
+        self, table: FloatArray, base: NDArray[np.intp], weights: Sequence[Weights]
+    ) -> FloatArray:
+        """Add up term by term: least memory, for many places."""
+        index, offsets = np.empty_like(base), self._offsets()
+        term, line = np.empty(base.shape), np.empty(base.shape)
+        total = np.zeros(base.shape)
+        for first, weight_first in enumerate(weights[0]):
+            plane = np.zeros(base.shape)
+            for second, weight_second in enumerate(weights[1]):
+                for third, weight_third in enumerate(weights[2]):
+                    np.add(base, offsets[first, second, third], out=index)
+                    into = line if third == 0 else term
+                    np.take(table, index, out=into, mode="clip")
+                    into *= weight_third
+                    if third:
+                        line += term
+                line *= weight_second
+                plane += line
+            plane *= weight_first
+            total += plane
+        return total
+
+    def _offsets(self) -> NDArray[np.intp]:
+        """Places of the 64 coefficients of a cell after its first, by variable."""
+        m = np.arange(4)
+        along = self.size[2] + 3
+        across = (self.size[1] + 3) * along
+        return m[:, None, None] * across + m[:, None] * along + m
