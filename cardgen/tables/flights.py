@@ -9,7 +9,7 @@ import numpy as np
 import numpy.typing as npt
 
 from cardgen.atmosphere import standard_pressure, standard_temperature
-from cardgen.constants import FOOT, GALLON_US, HOUR, KNOT
+from cardgen.constants import FOOT, GALLON_US, HOUR, INCH_OF_MERCURY, KNOT
 from cardgen.fit import Evidence
 from cardgen.fit.design import design
 from cardgen.fit.tolerance import COVERAGE_FACTOR
@@ -28,6 +28,10 @@ FloatArray = npt.NDArray[np.float64]
 _LEAST_ALTITUDE: Final = 3000.0 * FOOT
 _GREATEST_ALTITUDE: Final = 10_000.0 * FOOT
 _ROOM: Final = 50.0 * FOOT  # a row of a card in metres may miss a round number of feet
+
+_THROTTLE_ROOM: Final = 0.7 * INCH_OF_MERCURY
+"""Least distance from full throttle, so that a setting can be held in air a little warmer or higher
+than reckoned. Common practice, no source."""
 
 # Steps that a needle can be set to without interpolating.
 _SET_STEPS: Final = {"inHg": 0.5, "hPa": 10.0, "mbar": 10.0, "kPa": 1.0, "mmHg": 10.0}
@@ -95,7 +99,7 @@ def points_to_fly(model: Model, choices: CardChoices, *, count: int = 6) -> Flig
     Returns
     -------
     FlightPlan
-        Points that no limit forbids or warns of, none at full throttle; fewer than asked where
+        Points that no limit forbids or warns of, none near full throttle; fewer than asked where
         there are not so many [-]
     """
     candidates, points = _candidates(model, choices)
@@ -154,7 +158,8 @@ def _candidates(model: Model, choices: CardChoices) -> tuple[Evidence, list[Flig
         )
         verdict = judge(model, flown).verdict
         fine = (verdict != Verdict.OUTSIDE) & (verdict != Verdict.CAUTION)
-        fine &= ~asked.point.full_throttle & ~flown.point.full_throttle
+        room = flown.point.full_throttle_manifold_pressure - flown.point.manifold_pressure
+        fine &= ~asked.point.full_throttle & (room >= _THROTTLE_ROOM)
         fine &= ~np.isnan(flown.point.true_airspeed)
         seen: set[tuple[float, float, float]] = set()
         for at in np.argwhere(fine):
