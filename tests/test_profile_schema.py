@@ -98,6 +98,7 @@ def profile_files():
         for tree in (ROOT / "profiles", SOUND)
         for kind, folder in FOLDERS.items()
         for path in sorted((tree / folder).glob("*.yaml"))
+        if not path.name.endswith(".fit.yaml")
     ]
 
 
