@@ -114,6 +114,7 @@ def test_help_loads_only_click() -> None:
     assert {name for name in loaded if name.startswith("cardgen")} == {
         "cardgen",
         "cardgen.cli",
+        "cardgen.cli.failure",
         "cardgen.cli.main",
         "cardgen.errors",
     }
