@@ -352,8 +352,8 @@ def test_file_that_is_no_pdf_is_refused() -> None:
 def test_table_cut_over_pages_says_where_it_goes_on() -> None:
     edition = edition_of(Sketch(altitudes=12, rpm=6, tables=1, reasons=4))
     texts = page_texts(pdf_of(edition))
-    assert "Continued on page 2." in texts[0]
-    assert "Continued from page 1." in texts[1]
+    assert "Continued on page 3." in texts[0]  # page 2 is the back of the sheet
+    assert "Continued from page 1." in texts[2]
 
 
 def test_two_tables_share_a_page_where_they_fit() -> None:

@@ -8,6 +8,7 @@ import json
 from io import StringIO
 from typing import Any, Final
 
+from cardgen.render.beside import Listing, listings
 from cardgen.render.edition import Edition
 from cardgen.render.expectation import cells_of, state_of
 from cardgen.render.wording import (
@@ -21,6 +22,7 @@ from cardgen.render.wording import (
     stamps,
     tolerance_text,
 )
+from cardgen.tables.back import Chart
 from cardgen.tables.card import Card, CardTable, CellState
 from cardgen.units import to_unit
 
@@ -121,8 +123,43 @@ def content_digest(card: Card) -> str:
         [[table.mixture_basis, table.tolerance] for table in card.tables],
         [card.percent_of, card.stamps, card.notes],
         [[section.title, section.lines] for section in card.sections],
+        [_printed(listing) for listing in listings(card)],
+        [_drawn(chart) for chart in card.back.charts],
     ]
     return hashlib.sha256(json.dumps(words, sort_keys=True).encode()).hexdigest()
+
+
+def _printed(listing: Listing) -> dict[str, Any]:
+    """Return a listing as printed."""
+    heads = [f"{group.name} {head}" for group in listing.groups for head in group.heads]
+    return {
+        "title": listing.title,
+        "lead": list(listing.lead),
+        "heads": [listing.label, *heads],
+        "rows": [[row.label, *(cell.printed for cell in row.cells)] for row in listing.rows],
+        "marks": [list(mark) for mark in listing.marks],
+    }
+
+
+def _drawn(chart: Chart) -> list[Any]:
+    """Return a chart as drawn, its places to a hundredth of a unit."""
+    return [
+        [chart.title, chart.lead, repr((chart.across, chart.up))],
+        [
+            [
+                panel.name,
+                [
+                    [curve.kind, curve.label, [[round(x, 2), round(y, 2)] for x, y in curve.points]]
+                    for curve in panel.curves
+                ],
+                [
+                    [area.reason, [[round(x, 2), round(y, 2)] for x, y in sum(area.pieces, ())]]
+                    for area in panel.areas
+                ],
+            ]
+            for panel in chart.panels
+        ],
+    ]
 
 
 def to_csv(edition: Edition) -> bytes:
@@ -191,6 +228,7 @@ def to_json(edition: Edition) -> bytes:
             {"letter": reason.letter, "text": reason.text, "source": reason.source}
             for reason in card.reasons
         ],
+        "beside": [_printed(listing) for listing in listings(card)],
         "notes": [
             {"title": section.title, "lines": list(section.lines)}
             for section in note_sections(card, identity)

@@ -8,7 +8,8 @@ from itertools import groupby
 from typing import Final
 
 from cardgen.errors import ReleaseError
-from cardgen.render.boxes import Page
+from cardgen.render.beside import listings
+from cardgen.render.boxes import Box, Page
 from cardgen.render.columns import (
     LEAST_SETTING,
     Part,
@@ -16,12 +17,13 @@ from cardgen.render.columns import (
     lay_out_grid,
 )
 from cardgen.render.edition import Edition
+from cardgen.render.flow import BackPage, back_pages, place_back, subject
 from cardgen.render.grid import grid_height, place_grid
 from cardgen.render.legend import legend_height, legend_lines, place_legend
-from cardgen.render.marking import mark_page, place_foot, place_head
-from cardgen.render.notes import NoteLine, place_notes, share_out
+from cardgen.render.marking import Marking, mark_page, place_foot, place_head
+from cardgen.render.notes import NotesPage, place_notes, share_out
 from cardgen.render.paper import Paper
-from cardgen.render.wording import continued_text, note_sections, shows_temperature
+from cardgen.render.wording import OF_ALL, continued_text, note_sections, shows_temperature
 from cardgen.tables.card import Card, CardTable
 
 SETTING_SIZES: Final = (18.0, 17.0, 16.0, 15.0, 14.0, 13.0, LEAST_SETTING)
@@ -67,7 +69,7 @@ def lay_out(edition: Edition, paper: Paper) -> tuple[Page, ...]:
     Returns
     -------
     tuple of Page
-        Pages of tables, then pages of limits and notes; two-up papers are not yet imposed [-]
+        Tables on fronts, what stands beside them on backs; two-up papers are not yet imposed [-]
 
     Raises
     ------
@@ -76,15 +78,31 @@ def lay_out(edition: Edition, paper: Paper) -> tuple[Page, ...]:
     """
     room = _Room(paper)
     styles, plan = _plan(edition, room)
+    height = _room_on_back(edition, room)
+    backs = back_pages(edition.card, listings(edition.card), measure=room.measure, height=height)
     sections = note_sections(edition.card, edition.identity)
-    notes = share_out(sections, measure=room.measure, height=_room_for_notes(edition, room))
-    pages = len(plan) + len(notes)
-    placed = [
-        _table_page(edition, room, styles[k], plan, index=k, pages=pages) for k in range(len(plan))
-    ]
-    for k, lines in enumerate(notes):
-        placed.append(_notes_page(edition, room, lines, page=len(plan) + k + 1, pages=pages))
-    return tuple(placed)
+    notes = share_out(sections, measure=room.measure, height=height)
+    contents = _two_sided(plan, (*backs, *notes))
+    return tuple(
+        _table_page(edition, room, styles, plan, contents, page=page)
+        if isinstance(content, int)
+        else _back_page(edition, room, contents, page=page)
+        for page, content in enumerate(contents, start=1)
+    )
+
+
+Content = int | BackPage | NotesPage  # a page of tables by its place in the plan, or a back page
+
+
+def _two_sided(plan: Plan, backs: Sequence[BackPage | NotesPage]) -> tuple[Content, ...]:
+    """Return the pages in order: tables on the fronts of sheets, everything else on the backs.
+
+    What is left of either when the other is used up takes both sides.
+    """
+    fronts = range(len(plan))
+    both = min(len(plan), len(backs))
+    sheets = [side for k in range(both) for side in (fronts[k], backs[k])]
+    return (*sheets, *fronts[both:], *backs[both:])
 
 
 # --------------------------------------------------------------------------------------- planning
@@ -295,10 +313,9 @@ def _tables(card: Card, parts: Sequence[Part]) -> tuple[CardTable, ...]:
 # ----------------------------------------------------------------------------------------- placing
 
 
-def _continued(card: Card, plan: Plan, index: int, part: Part) -> str:
-    """Return which pages hold the rest of a table."""
-    pages = [k + 1 for k, parts in enumerate(plan) for p in parts if p.table == part.table]
-    here = pages.index(index + 1)
+def _where(pages: Sequence[int], page: int) -> str:
+    """Return where something that stands on some pages goes on, seen from one of them."""
+    here = pages.index(page)
     return continued_text(
         pages[here - 1] if here > 0 else None,
         pages[here + 1] if here + 1 < len(pages) else None,
@@ -306,16 +323,31 @@ def _continued(card: Card, plan: Plan, index: int, part: Part) -> str:
 
 
 def _table_page(
-    edition: Edition, room: _Room, style: Style, plan: Plan, *, index: int, pages: int
+    edition: Edition,
+    room: _Room,
+    styles: Sequence[Style],
+    plan: Plan,
+    contents: Sequence[Content],
+    *,
+    page: int,
 ) -> Page:
-    card, parts, page = edition.card, plan[index], index + 1
+    card, index = edition.card, contents[page - 1]
+    assert isinstance(index, int)
+    parts, style = plan[index], styles[index]
+    pages_of: dict[int, list[int]] = {}
+    for number, content in enumerate(contents, start=1):
+        if isinstance(content, int):
+            for part in plan[content]:
+                pages_of.setdefault(part.table, []).append(number)
     x, measure = room.left(page), room.measure
-    marking = mark_page(edition, _tables(card, parts), page=page, pages=pages, measure=measure)
+    marking = mark_page(
+        edition, _tables(card, parts), page=page, pages=len(contents), measure=measure
+    )
     boxes = list(place_head(marking, x=x, top=room.top, measure=measure))
     y = room.top - marking.head_height
     for part in parts:
         grid = lay_out_grid(edition, part, style=style, measure=measure)
-        continued = _continued(card, plan, index, part)
+        continued = _where(pages_of[part.table], page)
         boxes += place_grid(grid, x=x, top=y, continued=continued)
         y -= grid_height(grid, continued) + BETWEEN_TABLES
     boxes += place_legend(legend_lines(card, parts, measure), x=x, top=y + BETWEEN_TABLES)
@@ -323,23 +355,49 @@ def _table_page(
     return Page(room.paper.width, room.paper.height, tuple(boxes))
 
 
-def _room_for_notes(edition: Edition, room: _Room) -> float:
-    """Return the height a page of notes has between its head and its foot."""
+def _mark_back(edition: Edition, room: _Room, *, page: int, pages: int) -> Marking:
     tables = edition.card.tables
-    marking = mark_page(edition, tables, page=_MANY, pages=_MANY, measure=room.measure)
+    return mark_page(edition, tables, page=page, pages=pages, measure=room.measure, where=OF_ALL)
+
+
+def _room_on_back(edition: Edition, room: _Room) -> float:
+    """Return the height a back page has between its head and its foot."""
+    marking = _mark_back(edition, room, page=_MANY, pages=_MANY)
     return room.top - room.bottom - marking.head_height - marking.foot_height
 
 
-def _notes_page(
-    edition: Edition, room: _Room, lines: tuple[NoteLine, ...], *, page: int, pages: int
-) -> Page:
-    x, measure = room.left(page), room.measure
-    tables = edition.card.tables
-    marking = mark_page(edition, tables, page=page, pages=pages, measure=measure)
-    continued = continued_text(None, page + 1 if page < pages else None)
-    boxes = (
-        *place_head(marking, x=x, top=room.top, measure=measure),
-        *place_notes(lines, x=x, top=room.top - marking.head_height, continued=continued),
-        *place_foot(marking, x=x, bottom=room.bottom, measure=measure),
+def _back_page(edition: Edition, room: _Room, contents: Sequence[Content], *, page: int) -> Page:
+    x, measure, content = room.left(page), room.measure, contents[page - 1]
+    marking = _mark_back(edition, room, page=page, pages=len(contents))
+    top = room.top - marking.head_height
+    boxes: Sequence[Box]
+    if isinstance(content, NotesPage):
+        later = [
+            number
+            for number, other in enumerate(contents, start=1)
+            if isinstance(other, NotesPage) and number > page
+        ]
+        continued = continued_text(None, later[0] if later else None)
+        boxes = place_notes(content.lines, x=x, top=top, continued=continued)
+    else:
+        assert not isinstance(content, int)
+        where = [_where(_pages_of(contents, subject(part)), page) for part in content]
+        boxes = place_back(edition.card, content, where, x=x, top=top, measure=measure)
+    return Page(
+        room.paper.width,
+        room.paper.height,
+        (
+            *place_head(marking, x=x, top=room.top, measure=measure),
+            *boxes,
+            *place_foot(marking, x=x, bottom=room.bottom, measure=measure),
+        ),
     )
-    return Page(room.paper.width, room.paper.height, boxes)
+
+
+def _pages_of(contents: Sequence[Content], what: object) -> list[int]:
+    """Return the pages that carry parts of a listing or of a chart."""
+    return [
+        number
+        for number, content in enumerate(contents, start=1)
+        if isinstance(content, tuple) and any(subject(part) is what for part in content)
+    ]

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from functools import cache
 
 from cardgen.render.boxes import Box, Frame, Run
@@ -43,10 +43,32 @@ def legend_lines(card: Card, parts: Sequence[Part], measure: float) -> tuple[Mea
     tuple of (str, tuple of str)
         Marks with their lines [-]
     """
+    return meanings(card, _states(card, parts), measure)
+
+
+def meanings(
+    card: Card, states: Iterable[tuple[CellState, int]], measure: float
+) -> tuple[Meaning, ...]:
+    """Return each mark of some states with the lines of its meaning.
+
+    Parameters
+    ----------
+    card : Card
+        The card [-]
+    states : iterable of (CellState, int)
+        States with the index of their reasons [-]
+    measure : float
+        Room across [pt]
+
+    Returns
+    -------
+    tuple of (str, tuple of str)
+        Marks with their lines [-]
+    """
     indent = _legend_indent()
     return tuple(
         (mark, wrap(text, "regular", size=NOTE, measure=measure - indent))
-        for mark, text in legend(card, _states(card, parts))
+        for mark, text in legend(card, states)
     )
 
 

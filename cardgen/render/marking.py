@@ -11,6 +11,7 @@ from cardgen.render.columns import LEADING, NOTE
 from cardgen.render.edition import Edition
 from cardgen.render.fonts import CAP_HEIGHT, Face, printable, width, wrap
 from cardgen.render.wording import (
+    ON_PAGE,
     SUPPLEMENTARY,
     configuration,
     digest_text,
@@ -62,7 +63,13 @@ class Marking:
 
 
 def mark_page(
-    edition: Edition, tables: Sequence[CardTable], *, page: int, pages: int, measure: float
+    edition: Edition,
+    tables: Sequence[CardTable],
+    *,
+    page: int,
+    pages: int,
+    measure: float,
+    where: str = ON_PAGE,
 ) -> Marking:
     """Return the marking of one page.
 
@@ -71,11 +78,13 @@ def mark_page(
     edition : Edition
         What is being released [-]
     tables : sequence of CardTable
-        The tables on the page; all tables for a page of notes [-]
+        The tables on the page; all tables for a back page [-]
     page, pages : int
         Which page of how many [-]
     measure : float
         Room across [pt]
+    where : str
+        What to call the place that the tables stand in [-]
 
     Returns
     -------
@@ -108,7 +117,7 @@ def mark_page(
         foot=(
             *lines(card.percent_of),
             *lines(units_text(card)),
-            *lines(tolerance_text(card, tables)),
+            *lines(tolerance_text(card, tables, where=where)),
             *lines(digest_text(card, edition.issue, edition.replaces)),
         ),
         governs=wrap(SUPPLEMENTARY, "bold", size=governs_size, measure=inner),

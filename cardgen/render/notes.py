@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 from typing import Final, Literal
 
 from cardgen.render.boxes import Box, Run
@@ -14,6 +15,13 @@ SECTION_SIZE: Final = 11.0
 INDENT: Final = {"title": 0.0, "first": 6.0, "more": 15.0}  # [pt]
 
 NoteLine = tuple[str, Literal["title", "first", "more"]]  # first and further lines of one note
+
+
+@dataclass(frozen=True, slots=True)
+class NotesPage:
+    """The lines of one page of notes, and what each is."""
+
+    lines: tuple[NoteLine, ...]
 
 
 def _blocks(sections: Sequence[Section], measure: float) -> list[list[NoteLine]]:
@@ -38,7 +46,7 @@ def _height(line: NoteLine) -> float:
 
 def share_out(
     sections: Sequence[Section], *, measure: float, height: float
-) -> tuple[tuple[NoteLine, ...], ...]:
+) -> tuple[NotesPage, ...]:
     """Return the lines of each page of notes; a block longer than a page is broken.
 
     Parameters
@@ -50,8 +58,8 @@ def share_out(
 
     Returns
     -------
-    tuple of tuple of (str, str)
-        Per page its lines and what each is [-]
+    tuple of NotesPage
+        The pages in order [-]
     """
     limit = height - LEADING * NOTE  # room to say that the notes go on
     pages: list[list[NoteLine]] = [[]]
@@ -66,7 +74,7 @@ def share_out(
                 used = 0.0
             pages[-1].append(line)
             used += _height(line)
-    return tuple(tuple(page) for page in pages)
+    return tuple(NotesPage(tuple(page)) for page in pages)
 
 
 def place_notes(

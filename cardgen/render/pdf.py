@@ -10,8 +10,20 @@ from reportlab import rl_config
 from reportlab.pdfbase import pdfmetrics
 from reportlab.pdfbase.ttfonts import TTFont
 from reportlab.pdfgen.canvas import Canvas
+from reportlab.pdfgen.pathobject import PDFPathObject
 
-from cardgen.render.boxes import Box, Frame, Hatch, Page, Rule, Run, Tint
+from cardgen.render.boxes import (
+    Box,
+    Frame,
+    Ground,
+    Hatch,
+    Page,
+    Rule,
+    Run,
+    Tint,
+    Trace,
+    hatching,
+)
 from cardgen.render.fonts import FACES
 
 _NAMES = {"regular": "CardRegular", "bold": "CardBold"}
@@ -80,8 +92,46 @@ def _draw_box(canvas: Canvas, box: Box) -> None:
         canvas.setStrokeGray(0.0)
         canvas.setLineWidth(box.thickness)
         canvas.rect(box.x, box.y, box.width, box.height, stroke=1, fill=0)
+    elif isinstance(box, Trace):
+        _draw_trace(canvas, box)
+    elif isinstance(box, Ground):
+        _draw_ground(canvas, box)
     else:
         _draw_hatch(canvas, box)
+
+
+def _draw_trace(canvas: Canvas, box: Trace) -> None:
+    canvas.saveState()
+    canvas.setStrokeGray(0.0)
+    canvas.setLineWidth(box.thickness)
+    canvas.setLineJoin(1)
+    if box.dash:
+        canvas.setDash(list(box.dash))
+    canvas.drawPath(_path(canvas, (box.points,), closed=False), stroke=1, fill=0)
+    canvas.restoreState()
+
+
+def _draw_ground(canvas: Canvas, box: Ground) -> None:
+    canvas.saveState()
+    canvas.setStrokeGray(0.0)
+    canvas.setLineWidth(box.thickness)
+    canvas.clipPath(_path(canvas, box.pieces, closed=True), stroke=0, fill=0)
+    for x, y, to_x, to_y in hatching(box):
+        canvas.line(x, y, to_x, to_y)
+    canvas.restoreState()
+
+
+def _path(
+    canvas: Canvas, rings: Sequence[Sequence[tuple[float, float]]], *, closed: bool
+) -> PDFPathObject:
+    path = canvas.beginPath()
+    for first, *rest in rings:
+        path.moveTo(*first)
+        for point in rest:
+            path.lineTo(*point)
+        if closed:
+            path.close()
+    return path
 
 
 def _draw_hatch(canvas: Canvas, box: Hatch) -> None:

@@ -12,6 +12,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from cardgen.errors import ReleaseError
+from cardgen.render.beside_readback import Beside, squeezed
 from cardgen.render.edition import Edition
 from cardgen.render.expectation import (
     EXACT,
@@ -26,6 +27,7 @@ from cardgen.render.expectation import (
 from cardgen.render.fonts import printable
 from cardgen.render.wording import (
     DIGEST_DIGITS,
+    OF_ALL,
     SUPPLEMENTARY,
     altitude_label,
     basis_text,
@@ -70,6 +72,7 @@ def read_back(pdf: bytes, edition: Edition) -> None:
     """
     card = edition.card
     pages = read_words(pdf)
+    beside = Beside(card)
     unread = [set(cells_of(table)) for table in card.tables]
     spans: list[list[int]] = [[] for _ in card.tables]  # pages that carry each table
     for index, words in enumerate(pages):
@@ -77,9 +80,11 @@ def read_back(pdf: bytes, edition: Edition) -> None:
         seen = _read_tables(card, words, unread, place)
         for k in sorted({k for k, _ in seen}):
             spans[k].append(index + 1)
-        tables = [card.tables[k] for k in sorted({k for k, _ in seen})] or list(card.tables)
+        tables = [card.tables[k] for k in sorted({k for k, _ in seen})]
         _check_marking(edition, words, tables, page=index + 1, pages=len(pages))
         states = {state_of(card.tables[k], at) for k, at in seen}
+        if not seen:
+            states |= beside.read(words, index + 1)
         _check_present(
             words, place, [f"{mark} {meaning}" for mark, meaning in legend(card, states)]
         )
@@ -87,7 +92,8 @@ def read_back(pdf: bytes, edition: Edition) -> None:
         if cells:
             missing = cell_name(card, table, min(cells))
             raise ReleaseError(f"read-back: {missing} is nowhere on the card as it should be")
-    _check_continued(pages, spans)
+    beside.require_all()
+    _check_continued(pages, [*spans, *beside.listed, *beside.charted])
     everything = [word for page in pages for word in page]
     for section in note_sections(card, edition.identity):
         _check_present(everything, "the card", [section.title])
@@ -98,24 +104,19 @@ def read_back(pdf: bytes, edition: Edition) -> None:
 # ------------------------------------------------------------------------------------------ words
 
 
-def _squeezed(text: str) -> str:
-    """Return the text without spaces, so that line breaks do not count."""
-    return "".join(printable(text).split())
-
-
 def _check_present(words: Sequence[Word], place: str, texts: Sequence[str]) -> None:
-    page = _squeezed(" ".join(word.text for word in words))
+    page = squeezed(" ".join(word.text for word in words))
     for text in texts:
-        if _squeezed(text) not in page:
+        if squeezed(text) not in page:
             raise ReleaseError(f"read-back: {place} does not say {text!r}")
 
 
 def _check_present_across_pages(pages: Sequence[Sequence[Word]], text: str) -> None:
     """Require a note on one page, or word for word in order where a page ends within it."""
-    wanted = _squeezed(text)
-    if any(wanted in _squeezed(" ".join(word.text for word in page)) for page in pages):
+    wanted = squeezed(text)
+    if any(wanted in squeezed(" ".join(word.text for word in page)) for page in pages):
         return
-    runs = iter(_squeezed(word.text) for page in pages for word in page)
+    runs = iter(squeezed(word.text) for page in pages for word in page)
     while wanted:
         piece = next((run for run in runs if wanted.startswith(run)), None)
         if piece is None:
@@ -127,6 +128,9 @@ def _check_marking(
     edition: Edition, words: Sequence[Word], tables: Sequence[CardTable], *, page: int, pages: int
 ) -> None:
     card, identity = edition.card, edition.identity
+    tolerance = (
+        tolerance_text(card, tables) if tables else tolerance_text(card, card.tables, where=OF_ALL)
+    )
     exact = {word.text for word in words}
     place = f"page {page}"
     for text in (page_text(page, pages), printable(issue_text(identity, edition.issue))):
@@ -141,7 +145,7 @@ def _check_marking(
             *stamps(card, identity),
             card.percent_of,
             units_text(card),
-            tolerance_text(card, tables),
+            tolerance,
             card.digest[:DIGEST_DIGITS],
             digest_text(card, edition.issue, edition.replaces),
             SUPPLEMENTARY,
@@ -151,6 +155,7 @@ def _check_marking(
 
 def _check_continued(pages: Sequence[Sequence[Word]], spans: Sequence[Sequence[int]]) -> None:
     """Require each table, and the notes, to say rightly where they go on."""
+    notes = [page for page in range(1, len(pages) + 1) if not any(page in span for span in spans)]
     for page in range(1, len(pages) + 1):
         expected = []
         for span in (s for s in spans if page in s):
@@ -158,8 +163,8 @@ def _check_continued(pages: Sequence[Sequence[Word]], spans: Sequence[Sequence[i
             before = span[here - 1] if here > 0 else None
             after = span[here + 1] if here + 1 < len(span) else None
             expected.append(continued_text(before, after))
-        if not expected and page < len(pages):  # a page of notes that is not the last
-            expected.append(continued_text(None, page + 1))
+        if page in notes[:-1]:
+            expected.append(continued_text(None, notes[notes.index(page) + 1]))
         found = [word.text for word in pages[page - 1] if _CONTINUED.match(word.text)]
         if found != [text for text in expected if text]:
             raise ReleaseError(f"read-back: page {page} says {found} for where it goes on")

@@ -15,6 +15,10 @@ SUPPLEMENTARY: Final = "SUPPLEMENTARY. The approved flight manual, placards and 
 DEMONSTRATION: Final = "DEMONSTRATION DATA, NOT FOR FLIGHT"
 NOT_FITTED: Final = "NOT FITTED: PLANNING ESTIMATE ONLY"
 DIGEST_DIGITS: Final = 12
+ON_PAGE: Final = "on this page"
+OF_ALL: Final = "of all tables"
+"""What the tolerance printed on a page is the largest of: its own tables, or those of the card."""
+
 FULL_THROTTLE: Final = "FT"
 OUT_OF_REACH: Final = "\N{EM DASH}"
 OUTSIDE_EVIDENCE: Final = "?"
@@ -242,7 +246,7 @@ def units_text(card: Card) -> str:
     return "Units: " + ", ".join(parts)
 
 
-def tolerance_text(card: Card, tables: Iterable[CardTable], *, where: str = "on this page") -> str:
+def tolerance_text(card: Card, tables: Iterable[CardTable], *, where: str = ON_PAGE) -> str:
     """Return the largest 95 % tolerance of the tables, rounded up.
 
     Parameters
@@ -266,7 +270,7 @@ def tolerance_text(card: Card, tables: Iterable[CardTable], *, where: str = "on 
     units, decimals = card.choices.units, card.decimals
     largest = [max(column) for column in zip(*known, strict=True)]
     pieces = [
-        f"±{number(_up(value, places), places)} {sign(unit)}"
+        f"±{number(step_up(value, places), places)} {sign(unit)}"
         for value, places, unit in zip(
             largest,
             (decimals.pressure, decimals.fuel_flow, decimals.speed),
@@ -277,8 +281,21 @@ def tolerance_text(card: Card, tables: Iterable[CardTable], *, where: str = "on 
     return f"Tolerance (95 %, largest {where}): {', '.join(pieces)}"
 
 
-def _up(value: float, decimals: int) -> float:
-    """Return the value rounded up; 1e-9 keeps a value already rounded where it is."""
+def step_up(value: float, decimals: int) -> float:
+    """Return a value rounded up to a printed step.
+
+    Parameters
+    ----------
+    value : float
+        In the unit printed [-]
+    decimals : int
+        Decimal places [-]
+
+    Returns
+    -------
+    float
+        The next step not below it; 1e-9 keeps a value already rounded where it is [-]
+    """
     step: float = 10.0**decimals
     return math.ceil(value * step - 1e-9) / step
 

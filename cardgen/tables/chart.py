@@ -223,9 +223,9 @@ def power_chart(
     return Chart(
         title=f"Power and altitude, {name}",
         lead=(
-            f"A panel for each rpm. Thin lines: manifold pressure, {units.pressure}, as the gauge "
-            "reads. Thick line: full throttle. Hatched: forbidden, see the letter. Standard "
-            "temperature. Set by the tables, not from here."
+            f"Thin lines: manifold pressure, {units.pressure}, as the gauge reads, ending where "
+            "the evidence ends. Thick line: full throttle. Hatched: forbidden, see the letter. "
+            "Standard temperature. Set by the tables, not from here."
         ),
         across=across,
         up=up,
@@ -499,7 +499,7 @@ def _rays(across: Axis, up: Axis, per: str) -> Iterator[Curve]:
     """Lines of one distance on a unit of fuel, within the axes."""
     least = across.low / up.high
     most = across.high / max(up.low, 1e-9)
-    for value in _multiples(least, most, _nice((most - least) / 7.0)):
+    for value in _multiples(least, most, _nice((most - least) / 9.0)):
         if value <= 0.0:
             continue
         start = max(across.low, up.low * value)
