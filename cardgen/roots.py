@@ -11,6 +11,8 @@ FloatArray = NDArray[np.float64]
 
 #: Compressing the work to the unconverged elements pays once this share has converged.
 _COMPRESS_BELOW = 0.7
+#: Distance of two guesses below which secant steps stop.
+_ARRIVED = 1e-11
 
 
 def find_root(
@@ -106,3 +108,55 @@ def _share(points: tuple[FloatArray, ...], values: tuple[FloatArray, ...]) -> Fl
         share = f_a / (f_b - f_a) * f_c / (f_b - f_c)
         share += (c - a) / (b - a) * f_a / (f_c - f_a) * f_b / (f_c - f_b)
     return np.where(safe & np.isfinite(share), share, 0.5)
+
+
+def secant_steps(
+    function: Callable[[FloatArray], FloatArray],
+    first: FloatArray,
+    second: FloatArray,
+    *,
+    lower: FloatArray,
+    upper: FloatArray,
+    steps: int,
+) -> tuple[FloatArray, FloatArray]:
+    """Improve guesses of roots, without any promise that they settle.
+
+    Parameters
+    ----------
+    function : callable
+        Works element by element on arrays of the shape of `first` [-]
+    first, second : ndarray
+        Two guesses of each root, the better one first [-]
+    lower, upper : ndarray
+        Ends of the brackets, in either order, that no step leaves [-]
+    steps : int
+        Steps, each one evaluation [-]
+
+    Returns
+    -------
+    root : ndarray
+        Guesses after the last step [-]
+    step : ndarray
+        Size of the last step; as steps shrink ever faster, the error left is far smaller [-]
+
+    Notes
+    -----
+    Some half of the evaluations of `find_root`, which has to close its brackets. The caller takes
+    that one where the last step is not small.
+    """
+    low, high = np.minimum(lower, upper), np.maximum(lower, upper)
+    a, b = second, first
+    f_a, f_b = function(a), function(b)
+    step = b - a
+    for taken in range(steps):
+        # Closer together two guesses tell rounding from slope no more: they have arrived.
+        apart = np.abs(step) > _ARRIVED
+        slope = np.where(apart, (f_b - f_a) / np.where(apart, step, 1.0), np.inf)
+        with np.errstate(divide="ignore", invalid="ignore"):
+            moved = b - f_b / slope
+        a, f_a = b, f_b
+        b = np.clip(moved, low, high)
+        step = b - a
+        if taken < steps - 1:
+            f_b = function(b)
+    return b, np.abs(step)

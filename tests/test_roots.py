@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 from scipy.optimize import brentq
 
-from cardgen.roots import find_root
+from cardgen.roots import find_root, secant_steps
 
 
 def test_roots_of_many_equations_agree_with_scipy_brentq() -> None:
@@ -78,3 +78,25 @@ def test_shapes_broadcast_and_scalars_equal_array_elements() -> None:
 def test_nothing_to_solve_is_no_error() -> None:
     """An empty table has no roots."""
     assert find_root(lambda x: x, np.empty((0, 3)), 1.0).shape == (0, 3)
+
+
+def test_secant_steps_arrive_at_simple_roots_and_own_up_where_they_do_not() -> None:
+    """x² = a from nearby arrives to rounding; without a root the guess ends at its bracket."""
+    wanted = np.array([1.0, 2.0, 3.0, -1.0])
+    lower, upper = np.full(4, 0.5), np.full(4, 4.0)
+    guess = np.array([1.1, 1.4, 1.8, 1.0])
+    root, step = secant_steps(
+        lambda x: x * x - wanted, guess, guess + 0.01, lower=lower, upper=upper, steps=6
+    )
+    np.testing.assert_allclose(root[:3], np.sqrt(wanted[:3]), rtol=1e-12)
+    assert step[:3].max() < 1e-6
+    assert root[3] == lower[3]
+
+
+def test_secant_steps_keep_a_root_once_they_are_there() -> None:
+    """Steps beyond convergence divide rounding by rounding; they must not wander off."""
+    guess = np.array([1.0])
+    bounds = {"lower": np.array([0.0]), "upper": np.array([3.0])}
+    root, step = secant_steps(lambda x: x - 1.25, guess, guess + 0.1, steps=12, **bounds)
+    assert root[0] == pytest.approx(1.25, rel=1e-14)
+    assert step[0] < 1e-9

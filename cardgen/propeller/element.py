@@ -9,9 +9,9 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from cardgen.propeller.blade import REFERENCE_STATION, Blade, Body, Propeller
-from cardgen.propeller.loss import loss_factor
-from cardgen.propeller.section import clark_y, lift_drag
-from cardgen.roots import find_root
+from cardgen.propeller.loss import LossFactor, loss_factor
+from cardgen.propeller.section import Section, clark_y, lift_drag
+from cardgen.roots import find_root, secant_steps
 
 FloatArray = NDArray[np.float64]
 
@@ -19,6 +19,11 @@ FloatArray = NDArray[np.float64]
 STATION_COUNT = 16
 #: Inflow angles are solved to this [rad].
 _ANGLE_TOLERANCE = 1e-9
+#: Steps from the first guess, the second guess beside it, and a last step [rad] after which the
+#: error, which goes with the product of the last two, is below the tolerance.
+_SECANT_STEPS = 5
+_NEAR = 1e-3
+_SETTLED = 1e-6
 #: Points solved at once: stations times points then stay in the processor's cache.
 _CHUNK = 1024
 
@@ -160,39 +165,91 @@ def coefficients(
     return Coefficients(power, thrust, angle)
 
 
+@dataclass(frozen=True, slots=True, eq=False)
+class _Strips:
+    """Every station at every point, stations first."""
+
+    ratio: FloatArray  # V_x / (Omega r)
+    angle: FloatArray  # of the blade [rad]
+    solidity: FloatArray
+    section: Section
+    loss: LossFactor
+
+    def forces(
+        self, phi: FloatArray, sine: FloatArray, cosine: FloatArray
+    ) -> tuple[FloatArray, FloatArray]:
+        """Normal and tangential force coefficients at inflow angles."""
+        lift, drag = lift_drag(self.section, self.angle - phi)
+        return lift * cosine - drag * sine, lift * sine + drag * cosine
+
+    def residual(self, phi: FloatArray) -> FloatArray:
+        """Momentum less blade forces; see `coefficients`."""
+        sine, cosine = np.sin(phi), np.cos(phi)
+        normal, tangential = self.forces(phi, sine, cosine)
+        momentum = 4.0 * self.loss(sine) * sine * (sine - self.ratio * cosine)
+        return momentum - self.solidity * (normal + self.ratio * tangential)
+
+    def ends(self) -> tuple[FloatArray, FloatArray]:
+        """Inflow angles without induced flow and without lift, which enclose the root [rad]."""
+        return np.arctan(self.ratio), np.maximum(self.angle - self.section.zero_lift_angle, 1e-3)
+
+    def first_guess(self, no_induction: FloatArray, no_lift: FloatArray) -> FloatArray:
+        """Inflow angle of a straight lift line without drag, for small induced angles [rad]."""
+        sine, cosine = np.sin(no_induction), np.cos(no_induction)
+        loss = 4.0 * self.loss(sine)
+        pull = self.solidity * self.section.lift_slope
+        way = no_lift - no_induction
+        linear = loss * sine + pull
+        root = np.sqrt(np.maximum(linear * linear + 4.0 * loss * cosine * pull * way, 0.0))
+        return no_induction + 2.0 * pull * way / (linear + root)
+
+
+def _strips(propeller: Propeller, j: FloatArray, beta: FloatArray, mach: FloatArray) -> _Strips:
+    """Lay out the strips of some points."""
+    at = _stations(propeller.blade)
+    x = at.x
+    local_mach = mach * np.hypot(x, j / np.pi)
+    return _Strips(
+        ratio=inflow_factor(propeller.body, x) * j / (np.pi * x),
+        angle=beta + at.twist,
+        solidity=float(propeller.blade_count) * at.chord / (np.pi * x),
+        section=clark_y(at.thickness, local_mach, chord_to_radius=2.0 * at.chord / x),
+        loss=loss_factor(propeller.blade_count, at.hub, stations=tuple(x[:, 0].tolist())),
+    )
+
+
+def _inflow_angle(
+    propeller: Propeller, strips: _Strips, points: tuple[FloatArray, FloatArray, FloatArray]
+) -> FloatArray:
+    """Inflow angle at which momentum and blade forces balance [rad]."""
+    no_induction, no_lift = strips.ends()
+    guess = strips.first_guess(no_induction, no_lift)
+    near = guess + np.where(no_lift > no_induction, _NEAR, -_NEAR)
+    phi, step = secant_steps(
+        strips.residual, guess, near, lower=no_induction, upper=no_lift, steps=_SECANT_STEPS
+    )
+    # A few points, stalled ones above all, have a station that does not settle so fast, or at the
+    # end of its bracket only.
+    settled = (step < _SETTLED) & (phi != no_induction) & (phi != no_lift)
+    unsettled = ~settled.all(axis=0)
+    if unsettled.any():
+        there = _strips(propeller, *(values[unsettled] for values in points))
+        phi[:, unsettled] = find_root(there.residual, *there.ends(), tolerance=_ANGLE_TOLERANCE)
+    return phi
+
+
 def _solve(propeller: Propeller, j: FloatArray, beta: FloatArray, mach: FloatArray) -> FloatArray:
     """Power coefficient, thrust coefficient and angle of attack of one chunk of points."""
     blades = float(propeller.blade_count)
     at = _stations(propeller.blade)
     x = at.x
-    ratio = inflow_factor(propeller.body, x) * j / (np.pi * x)
-    local_mach = mach * np.hypot(x, j / np.pi)
-    section = clark_y(at.thickness, local_mach, chord_to_radius=2.0 * at.chord / x)
-    angle = beta + at.twist
-    solidity = blades * at.chord / (np.pi * x)
-    loss_at = loss_factor(propeller.blade_count, at.hub, stations=tuple(x[:, 0].tolist()))
-
-    def residual(phi: FloatArray) -> FloatArray:
-        sine, cosine = np.sin(phi), np.cos(phi)
-        lift, drag = lift_drag(section, angle - phi)
-        normal = lift * cosine - drag * sine
-        tangential = lift * sine + drag * cosine
-        loss = loss_at(sine)
-        return 4.0 * loss * sine * (sine - ratio * cosine) - solidity * (
-            normal + ratio * tangential
-        )
-
-    no_induction = np.arctan(ratio)
-    no_lift = np.maximum(angle - section.zero_lift_angle, 1e-3)
-    phi = find_root(residual, no_induction, no_lift, tolerance=_ANGLE_TOLERANCE)
+    strips = _strips(propeller, j, beta, mach)
+    phi = _inflow_angle(propeller, strips, (j, beta, mach))
 
     sine, cosine = np.sin(phi), np.cos(phi)
-    lift, drag = lift_drag(section, angle - phi)
-    normal = lift * cosine - drag * sine
-    tangential = lift * sine + drag * cosine
-    loss = loss_at(sine)
+    normal, tangential = strips.forces(phi, sine, cosine)
     # W / (n D), from the tangential component: never singular.
-    speed = np.pi * x / (cosine + solidity * tangential / (4.0 * loss * sine))
+    speed = np.pi * x / (cosine + strips.solidity * tangential / (4.0 * strips.loss(sine) * sine))
     load = at.weight[:, None] * speed * speed * at.chord
     thrust = 0.25 * blades * np.sum(load * normal, axis=0)
     power = 0.25 * np.pi * blades * np.sum(load * tangential * x, axis=0)

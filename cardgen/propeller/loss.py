@@ -92,36 +92,40 @@ def loss_factor(blade_count: int, hub: float, *, stations: tuple[float, ...]) ->
     """
     x = np.asarray(stations)
     pitch = np.asarray(_PITCHES)
-    factor = np.stack([_factor_along_blade(blade_count, hub, p, x) for p in _PITCHES])
+    factor = _factors_along_blade(blade_count, hub, pitch, x)
     sine = pitch[:, None] / np.hypot(pitch[:, None], x)
     middle = 0.5 * (sine[0] + sine[-1])
     half_width = 0.5 * (sine[-1] - sine[0])
     scaled = (sine - middle) / half_width
-    terms = np.stack(
-        [np.polyfit(scaled[:, k], factor[:, k], _DEGREE) for k in range(x.size)], axis=1
-    )
-    return LossFactor(middle[:, None], half_width[:, None], terms[:, :, None])
+    # Least squares at all stations at once, by orthogonal factors of the matrices of powers.
+    powers = scaled.T[:, :, None] ** np.arange(_DEGREE, -1, -1)
+    rotation, triangle = np.linalg.qr(powers)
+    terms = np.linalg.solve(triangle, rotation.transpose(0, 2, 1) @ factor.T[:, :, None])
+    return LossFactor(middle[:, None], half_width[:, None], terms.transpose(1, 0, 2))
 
 
-def _factor_along_blade(blade_count: int, hub: float, pitch: float, at: FloatArray) -> FloatArray:
-    """Loss factor at the stations `at`, for a wake of one pitch ratio, r tan(phi) / R."""
+def _factors_along_blade(
+    blade_count: int, hub: float, pitch: FloatArray, at: FloatArray
+) -> FloatArray:
+    """Loss factor at the stations `at`, a row for each pitch ratio of the wake, r tan(phi) / R."""
     angle = np.linspace(0.0, np.pi, _PANELS + 1)
     span = 0.5 * (1.0 - hub)
     edge = hub + span * (1.0 - np.cos(angle))
     inside = 0.5 * (angle[1:] + angle[:-1])
     x = hub + span * (1.0 - np.cos(inside))
-    axial, swirl = vortex_speeds(blade_count, x, vortex=edge, pitch=pitch)
-    hypotenuse = np.hypot(x, pitch)
-    cosine, sine = x / hypotenuse, pitch / hypotenuse
-    normal = axial * cosine[:, None] + swirl * sine[:, None]
+    axial, swirl = vortex_speeds(blade_count, x, vortex=edge, pitch=pitch[:, None, None])
+    hypotenuse = np.hypot(x, pitch[:, None])
+    cosine, sine = x / hypotenuse, pitch[:, None] / hypotenuse
+    normal = axial * cosine[:, :, None] + swirl * sine[:, :, None]
     # A panel's circulation starts at its inner edge and ends at its outer one.
-    influence = normal[:, :-1] - normal[:, 1:]
-    circulation = np.linalg.solve(influence, cosine)
+    influence = normal[:, :, :-1] - normal[:, :, 1:]
+    circulation = np.linalg.solve(influence, cosine[:, :, None])[:, :, 0]
     factor = blade_count * circulation / (4.0 * np.pi * x * cosine * sine)
     # It falls to zero at both ends like a square root, so it is smooth in the angle.
     wanted = np.arccos(1.0 - (at - hub) / span)
-    envelope = np.sin(inside)
-    return np.interp(wanted, inside, factor / envelope) * np.sin(wanted)
+    smooth = factor / np.sin(inside)
+    rows = np.stack([np.interp(wanted, inside, row) for row in smooth])
+    return np.asarray(rows * np.sin(wanted))
 
 
 def vortex_speeds(
