@@ -35,7 +35,8 @@ class Design:
         Candidates, most telling first [-]
     before, after : ndarray, shape (3,)
         Root mean square standard deviation of what is wanted, from the parameters alone, without
-        and with the candidates chosen, SI, in the order of `cardgen.fit.evidence.QUANTITIES`
+        and with the candidates chosen, in the order of `cardgen.fit.evidence.QUANTITIES`
+        [Pa, kg/s, m/s]
     """
 
     chosen: tuple[int, ...]

@@ -75,7 +75,8 @@ class FlightPlan:
     mass : float
         Mass that was reckoned with [kg]
     before, after : ndarray, shape (3,)
-        Typical 95 % tolerance of pressure, fuel flow and airspeed over the cells of the card, SI
+        Typical 95 % tolerance of pressure, fuel flow and airspeed over the cells of the card
+        [Pa, kg/s, m/s]
     """
 
     points: tuple[FlightPoint, ...]
