@@ -9,6 +9,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from cardgen.airspeed import indicated_temperature
 from cardgen.atmosphere import density_altitude, standard_pressure, standard_temperature
 from cardgen.constants import FOOT
 from cardgen.cruise import CruiseStatus
@@ -19,7 +20,7 @@ from cardgen.tables.card import Card, CellState
 from cardgen.tables.choices import UnitSet
 from cardgen.tables.compose import Words, compose
 from cardgen.tables.rows import COLUMNS, Combinations, rows, situation_of
-from cardgen.tables.solution import Model, Situation, solve
+from cardgen.tables.solution import Model, Situation, solve, true_temperature_of
 from cardgen.units import from_unit
 
 PROFILES = Path(__file__).parents[1] / "profiles" / "aircraft"
@@ -191,3 +192,22 @@ def test_printed_cells_are_on_the_safe_side_of_what_is_asked(model: Model) -> No
         # A step of 0.1 inHg is about half a percent of power; nearest rounding gives half of that.
         off = 100.0 * (check.power_fraction - table.power_fraction)[values]
         assert np.abs(off).max(initial=0.0) < 0.5
+
+
+def test_true_temperature_is_the_reading_less_the_rise_it_flies_with(model: Model) -> None:
+    """The rise belongs to the airspeed at the true temperature: consistent to a microkelvin."""
+    read = Situation(
+        pressure_altitude=np.array([500.0, 2000.0, 4500.0]),
+        temperature=np.array([270.0, 285.0, 295.0]),
+        mass=np.array(1270.0),
+        mixture=0,
+    )
+    setting = {
+        "indicated_rpm": np.array(2400.0),
+        "indicated_pressure": np.array([80e3, 75e3, 55e3]),
+    }
+    true = true_temperature_of(model, read, **setting)
+    speed = solve(model, replace(read, temperature=true), with_tolerance=False, **setting)
+    recovery = model.gauges.temperature_recovery
+    again = indicated_temperature(true, speed.point.true_airspeed, recovery_factor=recovery)
+    np.testing.assert_allclose(again, read.temperature, rtol=0.0, atol=1e-6)

@@ -218,18 +218,12 @@ def solve(
     """
     if (power_fraction is None) == (indicated_pressure is None):
         raise ValueError("a setting is asked by power or by manifold pressure, one of the two")
-    ask = _Ask(
-        pressure=standard_pressure(situation.pressure_altitude),
-        temperature=np.asarray(situation.temperature, dtype=np.float64),
-        mass=np.asarray(situation.mass, dtype=np.float64),
-        rpm=true_rpm(model.gauges, indicated_rpm),
-        power=None
-        if power_fraction is None
-        else np.asarray(power_fraction) * model.percent_of.power,
-        manifold_pressure=None
-        if indicated_pressure is None
-        else true_manifold_pressure(model.gauges, indicated_pressure),
-        humidity=model.relative_humidity,
+    ask = _asked(
+        model,
+        situation,
+        indicated_rpm=indicated_rpm,
+        power_fraction=power_fraction,
+        indicated_pressure=indicated_pressure,
     )
     aircraft, mixtures = model.fitted()
     point = _cruise(ask, aircraft, mixtures[situation.mixture])
@@ -290,6 +284,30 @@ class _Ask:
             None if self.manifold_pressure is None else run(self.manifold_pressure),
             self.humidity,
         )
+
+
+def _asked(
+    model: Model,
+    situation: Situation,
+    *,
+    indicated_rpm: Floats,
+    power_fraction: Floats | None = None,
+    indicated_pressure: Floats | None = None,
+) -> _Ask:
+    """Turn what gauges read into true values."""
+    return _Ask(
+        pressure=standard_pressure(situation.pressure_altitude),
+        temperature=np.asarray(situation.temperature, dtype=np.float64),
+        mass=np.asarray(situation.mass, dtype=np.float64),
+        rpm=true_rpm(model.gauges, indicated_rpm),
+        power=None
+        if power_fraction is None
+        else np.asarray(power_fraction) * model.percent_of.power,
+        manifold_pressure=None
+        if indicated_pressure is None
+        else true_manifold_pressure(model.gauges, indicated_pressure),
+        humidity=model.relative_humidity,
+    )
 
 
 def _cruise(ask: _Ask, aircraft: Aircraft, mixture: Mixture) -> CruisePoint:
@@ -381,22 +399,23 @@ def true_temperature_of(
 
     Notes
     -----
-    The rise depends on airspeed and airspeed hardly on temperature: four rounds of substitution
+    The rise depends on airspeed and airspeed hardly on temperature: three rounds of substitution
     leave less than a microkelvin.
     """
     read = np.asarray(situation.temperature, dtype=np.float64)
     recovery = model.gauges.temperature_recovery
     if recovery is None:
         return read
+    aircraft, mixtures = model.fitted()
     true = read
-    for _ in range(4):
-        speed = solve(
+    for _ in range(3):
+        ask = _asked(
             model,
             replace(situation, temperature=true),
             indicated_rpm=indicated_rpm,
             indicated_pressure=indicated_pressure,
-            with_tolerance=False,
-        ).point.true_airspeed
+        )
+        speed = _cruise(ask, aircraft, mixtures[situation.mixture]).true_airspeed
         corrected = true_temperature(read, speed, recovery_factor=recovery)
         true = np.where(np.isnan(corrected), read, corrected)
     return np.asarray(true)
