@@ -2,10 +2,20 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass
 from io import BytesIO
+from typing import Final
 
 from cardgen.errors import ReleaseError
+
+# What bears on text in a page's contents: text objects, and what moves the axes outside them.
+_STRING: Final = rb"\((?:\\.|[^\\()])*\)"
+_TEXT: Final = re.compile(
+    rb"\bBT\b(?:" + _STRING + rb"|[^()E]|E(?!T\b))*\bET\b"
+    rb"|(?:[-+.0-9]+\s+){6}cm\b|(?<![\w/])[qQ](?![\w/])",
+    re.DOTALL,
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,6 +50,7 @@ def read_words(pdf: bytes) -> tuple[tuple[Word, ...], ...]:
     # Only a caller that reads back pays for loading the PDF reader.
     from pypdf import PdfReader  # noqa: PLC0415
     from pypdf.errors import PyPdfError  # noqa: PLC0415
+    from pypdf.generic import DecodedStreamObject, NameObject  # noqa: PLC0415
 
     pages: list[tuple[Word, ...]] = []
     try:
@@ -59,6 +70,12 @@ def read_words(pdf: bytes) -> tuple[tuple[Word, ...], ...]:
                     name = str((font or {}).get("/BaseFont", ""))
                     words.append(Word(" ".join(text.split()), x, y, size * tm[0] * cm[0], name))
 
+            contents = sheet.get_contents()
+            if contents is not None:
+                # Lines and hatching are most of a page and say nothing: the reader is spared them.
+                text_only = DecodedStreamObject()
+                text_only.set_data(b"\n".join(_TEXT.findall(contents.get_data())))
+                sheet[NameObject("/Contents")] = text_only
             sheet.extract_text(visitor_text=visit)
             wide, high = float(sheet.mediabox.width), float(sheet.mediabox.height)
             if wide > high:

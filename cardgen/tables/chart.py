@@ -1,14 +1,11 @@
 """The numbers behind a card's charts: what to draw, not how.
 
-For each mixture one chart shows percent power against altitude, a panel for each rpm: lines of one
-manifold pressure, the full-throttle line that ends them, and the ground that limits forbid. Another
-shows fuel flow against airspeed, a panel for each mixture, with lines of one distance on a unit of
-fuel.
+A chart for each mixture shows percent power against altitude, a panel for each rpm: lines of one
+manifold pressure, the full-throttle line that ends them, and the ground that limits forbid.
 """
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from itertools import pairwise
@@ -20,8 +17,7 @@ import numpy.typing as npt
 from cardgen.limits import Findings, Verdict
 from cardgen.tables.back import Area, Axis, Chart, Curve, Panel
 from cardgen.tables.choices import CardChoices, UnitSet
-from cardgen.tables.printed import fuel_flow_in, message_units, pressure_from
-from cardgen.tables.range import fuel_unit
+from cardgen.tables.printed import message_units, pressure_from
 from cardgen.tables.rows import situation_of
 from cardgen.tables.solution import Model, Solution, solve
 from cardgen.tables.verdict import judge
@@ -34,27 +30,20 @@ Point = tuple[float, float]
 ALTITUDES: Final = 13
 """Places at which the lines of the power chart are computed."""
 
-FLIGHT_LEVELS: Final = 3
-"""Most altitudes drawn in the speed chart; more would run into each other."""
-
-LEAST_DRAWN, MORE_DRAWN, POWER_STEP = 0.40, 0.10, 0.02
-"""Where lines of the speed chart begin, how far beyond the tables they go, and in which steps."""
-
 _POWER_STEP: Final = 10.0  # between the named percent powers [%]
 _BEYOND: Final = 3.0  # a power that no engine gives, to ask for full throttle [-]
 
 # Between named pressures, and between the pressures at which limits are asked: fine enough that the
 # edge of forbidden ground lies within a gauge's width.
 _PRESSURE_STEPS: Final = {
-    "inHg": (2.0, 0.25),
-    "cmHg": (5.0, 0.5),
-    "mmHg": (50.0, 5.0),
-    "hPa": (50.0, 10.0),
-    "mbar": (50.0, 10.0),
-    "kPa": (5.0, 1.0),
+    "inHg": (2.0, 0.5),
+    "cmHg": (5.0, 1.0),
+    "mmHg": (50.0, 10.0),
+    "hPa": (50.0, 12.5),
+    "mbar": (50.0, 12.5),
+    "kPa": (5.0, 1.25),
 }
 _ALTITUDE_STEPS: Final = {"ft": 2000.0, "m": 500.0}
-_NICE: Final = (1.0, 2.0, 5.0)
 
 
 @dataclass(frozen=True, slots=True)
@@ -197,11 +186,11 @@ def power_chart(
         f"{kind} altitude, {units.altitude}",
         float(charted.altitude[0]),
         float(charted.altitude[-1]),
-        _multiples(
+        multiples(
             float(charted.altitude[0]), float(charted.altitude[-1]), _ALTITUDE_STEPS[units.altitude]
         ),
     )
-    covered = _covered(model, charted.findings)
+    covered = covered_by_evidence(model, charted.findings)
     panels = tuple(
         Panel(
             name=f"{rpm:.0f} rpm",
@@ -239,17 +228,43 @@ def _power_axis(choices: CardChoices, ceiling: FloatArray) -> Axis:
     most = min(max(100.0 * max(choices.power_fraction) + 5.0, float(np.nanmax(ceiling))), 110.0)
     low = _POWER_STEP * np.floor((least - 5.0) / _POWER_STEP)
     high = _POWER_STEP * np.ceil(most / _POWER_STEP)
-    return Axis("% power", float(low), float(high), _multiples(low, high, _POWER_STEP))
+    return Axis("% power", float(low), float(high), multiples(low, high, _POWER_STEP))
 
 
-def _multiples(low: float, high: float, step: float) -> tuple[float, ...]:
-    """Multiples of a step from one value to another."""
+def multiples(low: float, high: float, step: float) -> tuple[float, ...]:
+    """Multiples of a step from one value to another.
+
+    Parameters
+    ----------
+    low, high : float
+        First and last value that may be one [-]
+    step : float
+        Their distance [-]
+
+    Returns
+    -------
+    tuple of float
+        In rising order [-]
+    """
     count = np.arange(np.ceil(low / step - 1e-9), np.floor(high / step + 1e-9) + 1.0)
     return tuple(float(step * k) + 0.0 for k in count)  # + 0.0 makes -0.0 the zero it is
 
 
-def _covered(model: Model, findings: Findings) -> BoolArray:
-    """Settings that the evidence covers, all of them where there is no fit."""
+def covered_by_evidence(model: Model, findings: Findings) -> BoolArray:
+    """Settings that the evidence covers.
+
+    Parameters
+    ----------
+    model : Model
+        The aircraft [-]
+    findings : Findings
+        What the limits say of the settings [-]
+
+    Returns
+    -------
+    ndarray of bool
+        All true where there is no fit [-]
+    """
     covered = np.ones(findings.shape, dtype=np.bool_)
     if model.knowledge.covers is None:
         return covered
@@ -272,7 +287,7 @@ def _pressure_lines(
     step, _ = _PRESSURE_STEPS[units.pressure]
     full = to_unit(charted.ceiling.indicated_manifold_pressure[rpm, :, 0], units.pressure)
     full = np.asarray(full)
-    for value in _multiples(float(charted.pressure[0]), float(charted.pressure[-1]), step):
+    for value in multiples(float(charted.pressure[0]), float(charted.pressure[-1]), step):
         place = int(np.argmin(np.abs(charted.pressure - value)))
         points: list[Point] = [
             (float(x), float(y))
@@ -377,133 +392,3 @@ def _strip(
         (float(right), float(high[last])),
         (float(left), float(low[last])),
     )
-
-
-# ----------------------------------------------------------------------------------- speed chart
-
-
-def speed_chart(model: Model, choices: CardChoices) -> Chart | None:
-    """Fuel flow against airspeed, a panel for each mixture.
-
-    Parameters
-    ----------
-    model : Model
-        The aircraft [-]
-    choices : CardChoices
-        What the card shows [-]
-
-    Returns
-    -------
-    Chart or None
-        None where nothing can be drawn [-]
-    """
-    units = choices.units
-    rpm = choices.rpm[len(choices.rpm) // 2]
-    levels = _levels(choices)
-    drawn = [
-        (name, _speed_curves(model, choices, mixture=model.mixture_index(name), rpm=rpm))
-        for name in choices.mixtures
-    ]
-    points = [point for _, curves in drawn for curve in curves for point in curve.points]
-    if not points:
-        return None
-    speeds, flows = zip(*points, strict=True)
-    across = _axis(f"True airspeed, {units.speed}", min(speeds), max(speeds), 5)
-    up = _axis(f"Fuel flow, {units.fuel_flow}", min(flows), max(flows), 4)
-    distance = {"kt": "nm", "mph": "mi", "km/h": "km"}[units.speed]
-    per = f"{distance}/{fuel_unit(units.fuel_flow)}"
-    rays = tuple(_rays(across, up, per))
-    at = ", ".join(f"{float(to_unit(level, units.altitude)):.0f}" for level in levels)
-    kind = "density" if choices.altitude_kind == "density" else "pressure"
-    return Chart(
-        title="Fuel flow and airspeed",
-        lead=(
-            f"At {rpm:.0f} rpm and {kind} altitudes {at} {units.altitude}, heaviest mass of this "
-            f"card, standard temperature. Thick lines: fuel flow, ending where limits or evidence "
-            f"end. Thin lines: {per} in still air."
-        ),
-        across=across,
-        up=up,
-        panels=tuple(Panel(name, (*rays, *curves)) for name, curves in drawn),
-    )
-
-
-def _levels(choices: CardChoices) -> tuple[float, ...]:
-    """Lowest, middle and highest altitude of the card [m]."""
-    altitude = choices.altitude
-    places = sorted({0, (len(altitude) - 1) // 2, len(altitude) - 1})
-    return tuple(altitude[place] for place in places)[:FLIGHT_LEVELS]
-
-
-def _speed_curves(
-    model: Model, choices: CardChoices, *, mixture: int, rpm: float
-) -> tuple[Curve, ...]:
-    """Fuel flow against airspeed at each level."""
-    units = choices.units
-    levels = _levels(choices)
-    least, most = LEAST_DRAWN, max(choices.power_fraction) + MORE_DRAWN
-    if choices.break_in is not None:
-        least, most = choices.break_in.least_power_fraction, max(choices.power_fraction)
-    power = np.arange(least, most + 0.5 * POWER_STEP, POWER_STEP)
-    solution = solve(
-        model,
-        situation_of(
-            np.array(levels)[:, None],
-            np.zeros(1),
-            by_density=choices.altitude_kind == "density",
-            mass=np.array(choices.mass[-1]),
-            mixture=mixture,
-        ),
-        indicated_rpm=rpm,
-        power_fraction=power,
-        with_tolerance=False,
-    )
-    findings = judge(model, solution)
-    density = model.subject.aircraft.engine.fuel_density
-    seen = (
-        (findings.verdict != Verdict.OUTSIDE)
-        & _covered(model, findings)
-        & ~solution.point.full_throttle
-        & np.isfinite(solution.point.power)
-    )
-    speed = np.asarray(to_unit(solution.point.true_airspeed, units.speed))
-    flow = fuel_flow_in(solution.point.fuel_flow, units.fuel_flow, fuel_density=density)
-    curves = []
-    for k, level in enumerate(levels):
-        points = tuple(
-            (float(x), float(y)) for x, y in zip(speed[k][seen[k]], flow[k][seen[k]], strict=True)
-        )
-        if len(points) >= 2:
-            label = f"{float(to_unit(level, units.altitude)):.0f} {units.altitude}"
-            curves.append(Curve("setting", label, points))
-    return tuple(curves)
-
-
-def _axis(label: str, low: float, high: float, count: int) -> Axis:
-    """An axis about values, with some round ticks."""
-    step = _nice((high - low) / count)
-    start, end = step * np.floor(low / step), step * np.ceil(high / step + 0.05)
-    return Axis(label, float(start), float(end), _multiples(float(start), float(end), step))
-
-
-def _nice(raw: float) -> float:
-    """The least of 1, 2, 5, 10, ... that is not below a number."""
-    if raw <= 0.0:
-        return 1.0
-    decade: float = 10.0 ** math.floor(math.log10(raw))
-    steps = (n * decade for n in _NICE if n * decade >= raw * 0.999)
-    return next(steps, 10.0 * decade)
-
-
-def _rays(across: Axis, up: Axis, per: str) -> Iterator[Curve]:
-    """Lines of one distance on a unit of fuel, within the axes."""
-    least = across.low / up.high
-    most = across.high / max(up.low, 1e-9)
-    for value in _multiples(least, most, _nice((most - least) / 9.0)):
-        if value <= 0.0:
-            continue
-        start = max(across.low, up.low * value)
-        end = min(across.high, up.high * value)
-        if end - start > 0.12 * (across.high - across.low):
-            points = ((start, start / value), (end, end / value))
-            yield Curve("ray", f"{value:g} {per}", points)

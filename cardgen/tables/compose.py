@@ -21,7 +21,7 @@ from cardgen.limits.bars import bars_of, letter
 from cardgen.tables.back import Back, Chart, Supply
 from cardgen.tables.best import best_tables
 from cardgen.tables.card import Card, CardTable, CellState, Reason, Section
-from cardgen.tables.chart import Charted, charted, power_chart, speed_chart
+from cardgen.tables.chart import Charted, charted, power_chart
 from cardgen.tables.choices import BreakIn, CardChoices, UnitSet
 from cardgen.tables.printed import (
     decimals,
@@ -36,6 +36,7 @@ from cardgen.tables.printed import (
 from cardgen.tables.range import range_tables
 from cardgen.tables.rows import situation_of
 from cardgen.tables.solution import Model, Situation, Solution, solve
+from cardgen.tables.speed_chart import speed_chart
 from cardgen.tables.temperature import row_table
 from cardgen.tables.verdict import judge
 from cardgen.units import to_unit
@@ -193,43 +194,55 @@ def _block(model: Model, choices: CardChoices, mixture: int) -> _Block:
         raise AssertionError("tolerances were asked for")
     unit, places = choices.units.pressure, decimals(choices.units).pressure
     reads = np.asarray(to_unit(exact.indicated_manifold_pressure, unit))
-    full = exact.point.full_throttle
-    # At full throttle the lever is against its stop; what the gauge then reads is information.
-    nearest = np.where(full, rounded_down(reads, places), rounded(reads, places))
-    other = np.where(nearest > reads, rounded_down(reads, places), rounded_up(reads, places))
-    findings = _judged(model, situation, exact=exact, printed=nearest, units=choices.units)
-    apart = _judged(model, situation, exact=exact, printed=other, units=choices.units)
+    full, down = exact.point.full_throttle, rounded_down(reads, places)
+    nearest = rounded(reads, places)
+    other = np.where(nearest > reads, down, rounded_up(reads, places))
+    # At full throttle the lever is against its stop and the gauge reads what it reads, rounded
+    # down where it is printed: neither may break a limit.
+    first = np.where(full, exact.indicated_manifold_pressure, pressure_from(nearest, unit))
+    second = pressure_from(np.where(full, down, other), unit)
+    findings = _judged(model, exact, pressure=first, units=choices.units)
+    refused = _refused(findings)
+    refused_apart = _refused(_judged(model, exact, pressure=second, units=choices.units))
     # Near a limit the step away from it is taken, if that is allowed.
-    swap = ~full & (findings.verdict == Verdict.OUTSIDE) & (apart.verdict != Verdict.OUTSIDE)
+    swap = np.where(full, ~refused & refused_apart, refused & ~refused_apart)
     if swap.any():
-        nearest = np.where(swap, other, nearest)
-        findings = _judged(model, situation, exact=exact, printed=nearest, units=choices.units)
+        first = np.where(swap, second, first)
+        findings = _judged(model, exact, pressure=first, units=choices.units)
     tolerance = exact.tolerance
     return _Block(
         mixture=mixture,
         solution=exact,
         findings=_with_break_in(findings, exact, choices.break_in),
-        pressure=nearest,
+        pressure=np.where(full, down, np.where(swap, other, nearest)),
         tolerance=(tolerance.manifold_pressure, tolerance.fuel_flow, tolerance.true_airspeed),
     )
 
 
-def _judged(
-    model: Model, situation: Situation, *, exact: Solution, printed: FloatArray, units: UnitSet
-) -> Findings:
-    """Findings at printed manifold pressures, at full throttle where that is it."""
-    full = exact.point.full_throttle
-    asked = np.where(
-        full, exact.indicated_manifold_pressure, pressure_from(printed, units.pressure)
-    )
+def _judged(model: Model, exact: Solution, *, pressure: FloatArray, units: UnitSet) -> Findings:
+    """Findings at other readings of the manifold-pressure gauge, given in Pa."""
     solution = solve(
         model,
-        situation,
+        exact.situation,
         indicated_rpm=exact.indicated_rpm,
-        indicated_pressure=asked,
+        indicated_pressure=pressure,
         with_tolerance=False,
     )
     return judge(model, solution, units=message_units(units))
+
+
+def _unsolved(findings: Findings) -> BoolArray:
+    """Where a reading has no level flight."""
+    found = np.zeros(findings.shape, dtype=np.bool_)
+    for judgement in findings.judgements:
+        if judgement.limit == "solution":
+            found |= judgement.verdict != Verdict.INSIDE
+    return found
+
+
+def _refused(findings: Findings) -> BoolArray:
+    """Where a reading cannot be printed: it breaks a limit, or has no level flight."""
+    return np.asarray((findings.verdict == Verdict.OUTSIDE) | _unsolved(findings))
 
 
 def _with_break_in(findings: Findings, solution: Solution, band: BreakIn | None) -> Findings:
@@ -266,6 +279,7 @@ def _states(block: _Block, barred: BoolArray) -> npt.NDArray[np.int8]:
     unsolved = (point.status == CruiseStatus.NO_LEVEL_FLIGHT) | (
         point.status == CruiseStatus.OUTSIDE_MODEL
     )
+    state[_unsolved(block.findings)] = CellState.OUT_OF_REACH
     state[barred] = CellState.FORBIDDEN
     state[unsolved] = CellState.OUT_OF_REACH
     return state
