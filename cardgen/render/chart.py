@@ -139,7 +139,30 @@ def place_chart(
     for text, face, size in chart_lines(part.chart, measure, continued):
         y -= LEADING * size
         boxes.append(Run(x, y + 0.2 * size, text, face, size))
-    y -= 4.0
+    return boxes + place_panels(part, card, x=x, top=y - 4.0, measure=measure)
+
+
+def place_panels(part: ChartPart, card: Card, *, x: float, top: float, measure: float) -> list[Box]:
+    """Return the boxes of the panels of a part and the name of their abscissa.
+
+    Parameters
+    ----------
+    part : ChartPart
+        The part [-]
+    card : Card
+        The card, for the letters of reasons [-]
+    x, top : float
+        Upper left corner [pt]
+    measure : float
+        Room across [pt]
+
+    Returns
+    -------
+    list of Box
+        Panel after panel [-]
+    """
+    boxes: list[Box] = []
+    y = top
     each = (measure - BETWEEN * (part.across - 1)) / part.across
     height = panel_height(part.field)
     for k, index in enumerate(part.panels):

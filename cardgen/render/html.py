@@ -9,6 +9,7 @@ from typing import Final
 
 from cardgen.render.edition import Edition
 from cardgen.render.expectation import cells_of, state_of
+from cardgen.render.html_beside import chart_figures, listing_tables
 from cardgen.render.wording import (
     FULL_THROTTLE,
     SUPPLEMENTARY,
@@ -113,6 +114,8 @@ def to_html(edition: Edition) -> bytes:
 <main>
 {_look_up(card)}
 {tables}
+{listing_tables(card, registration=identity.registration, issue=edition.issue)}
+{chart_figures(card)}
 <footer>
 {foot}
 </footer>

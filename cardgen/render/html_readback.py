@@ -6,6 +6,8 @@ from html.parser import HTMLParser
 from typing import Any
 
 from cardgen.errors import ReleaseError
+from cardgen.render.beside import Listing, listings
+from cardgen.render.beside_readback import cell_is_right, read_chart
 from cardgen.render.edition import Edition
 from cardgen.render.expectation import (
     EXACT,
@@ -32,6 +34,7 @@ from cardgen.render.wording import (
     tolerance_text,
     units_text,
 )
+from cardgen.render.words import Word
 from cardgen.tables.card import Card, CardTable
 
 
@@ -44,7 +47,9 @@ class _Reader(HTMLParser):
         self.tables: list[list[list[list[str]]]] = []
         self.says: list[list[str]] = []  # what the look-up says, per table
         self.digest = ""
+        self.drawings: list[list[Word]] = []  # the texts of each drawing and where they stand
         self._silent = 0  # inside style or script
+        self._text: tuple[float, float, float, str] | None = None
         self._cell: list[str] | None = None
 
     def handle_starttag(self, tag: str, attrs: list[tuple[str, str | None]]) -> None:
@@ -63,12 +68,20 @@ class _Reader(HTMLParser):
             self.tables[-1][-1].append(self._cell)
             if says := given.get("data-says"):
                 self.says[-1].append(says)
+        elif tag == "svg":
+            self.drawings.append([])
+        elif tag == "text":
+            x, y, size = (float(given.get(name) or 0.0) for name in ("x", "y", "font-size"))
+            # Upwards as on paper, so that one reader serves both.
+            self._text = (x, -y, size, "Bold" if given.get("class") == "bold" else "Regular")
 
     def handle_endtag(self, tag: str) -> None:
         if tag in ("style", "script"):
             self._silent -= 1
         elif tag in ("td", "th"):
             self._cell = None
+        elif tag == "text":
+            self._text = None
 
     def handle_data(self, data: str) -> None:
         text = " ".join(data.split())
@@ -77,6 +90,9 @@ class _Reader(HTMLParser):
         self.texts.append(text)
         if self._cell is not None:
             self._cell.append(text)
+        if self._text is not None:
+            x, y, size, font = self._text
+            self.drawings[-1].append(Word(text, x, y, size, font))
 
     def error(self, message: str) -> Any:
         raise ReleaseError(f"read-back: the HTML card cannot be parsed: {message}")
@@ -103,11 +119,14 @@ def read_back_html(page: bytes, edition: Edition) -> None:
     reader.close()
     if reader.digest != card.digest:
         raise ReleaseError("read-back: the HTML card carries another profile digest")
-    if len(reader.tables) != len(card.tables):
-        raise ReleaseError(
-            f"read-back: the HTML card has {len(reader.tables)} tables, not {len(card.tables)}"
-        )
-    for table, rows, says in zip(card.tables, reader.tables, reader.says, strict=True):
+    beside = listings(card)
+    due = len(card.tables) + len(beside)
+    if len(reader.tables) != due:
+        raise ReleaseError(f"read-back: the HTML card has {len(reader.tables)} tables, not {due}")
+    for listing, rows in zip(beside, reader.tables[len(card.tables) :], strict=True):
+        _check_listing(listing, rows)
+    _check_charts(card, reader.drawings)
+    for table, rows, says in zip(card.tables, reader.tables, reader.says, strict=False):
         _check_table(card, table, rows)
         _check_says(card, table, says)
     wanted = [
@@ -128,12 +147,44 @@ def read_back_html(page: bytes, edition: Edition) -> None:
             basis_text(table),
             *(text for _, text in legend(card, {state_of(table, at) for at in cells_of(table)})),
         ]
+    for listing in beside:
+        wanted += [listing.title, *listing.lead]
+    for chart in card.back.charts:
+        wanted += [chart.title, chart.lead]
     for section in note_sections(card, identity):
         wanted += [section.title, *section.lines]
     said = set(reader.texts)
     for text in wanted:
         if " ".join(text.split()) not in said:
             raise ReleaseError(f"read-back: the HTML card does not say {text!r}")
+
+
+def _check_listing(listing: Listing, rows: list[list[list[str]]]) -> None:
+    """Hold a table of the screen against the listing it shows."""
+    name = f"read-back: the HTML card, {listing.title}"
+    groups, heads, *body = [[" ".join(cell) for cell in row] for row in rows]
+    if groups != ["", *(group.name for group in listing.groups)]:
+        raise ReleaseError(f"{name}: groups are {groups}")
+    if heads != [listing.label, *(head for group in listing.groups for head in group.heads)]:
+        raise ReleaseError(f"{name}: heads are {heads}")
+    if len(body) != len(listing.rows):
+        raise ReleaseError(f"{name}: has {len(body)} rows")
+    for row, texts in zip(listing.rows, body, strict=True):
+        label, *cells = texts
+        right = len(cells) == len(row.cells) and all(map(cell_is_right, cells, row.cells))
+        if not right or not is_same(label, row.value):
+            raise ReleaseError(f"{name}, {row.label}: printed {texts}")
+
+
+def _check_charts(card: Card, drawings: list[list[Word]]) -> None:
+    """Hold the texts of every drawing against the chart it shows."""
+    if len(drawings) != len(card.back.charts):
+        raise ReleaseError(f"read-back: the HTML card has {len(drawings)} drawings")
+    for chart, words in zip(card.back.charts, drawings, strict=True):
+        head = [Word(text, 0.0, 0.0, 0.0, "") for text in (chart.title, chart.lead)]
+        found = read_chart([*head, *words], card, chart, "the HTML card")
+        if found is None or len(found) < len(chart.panels):
+            raise ReleaseError(f"read-back: the HTML card, {chart.title}: lacks panels")
 
 
 def _check_table(card: Card, table: CardTable, rows: list[list[list[str]]]) -> None:
