@@ -26,7 +26,7 @@ from cardgen.profile.values import (
     Wind,
     wrong,
 )
-from cardgen.tables.choices import BreakIn, CardChoices, UnitSet
+from cardgen.tables.choices import IN_ONE_UNIT, BreakIn, CardChoices, SecondUnits, UnitSet
 
 UNIT_SETS = {
     "us": UnitSet(),
@@ -37,21 +37,25 @@ UNIT_SETS = {
 """Sets of units by name; `metric` keeps feet and knots, as flown nearly everywhere."""
 
 
+PRESSURES = ("inHg", "hPa", "cmHg", "kPa", "mmHg", "mbar")
+VOLUME_FLOWS = ("gal/h", "l/h", "impgal/h")
+MASS_FLOWS = ("lb/h", "kg/h")
+SPEEDS = ("kt", "mph", "km/h")
+
+
 class UnitsSection(Section):
     """Units of the card: a set, and single units that depart from it."""
 
     set: Annotated[str, Choice(tuple(UNIT_SETS))] = Field(
         "us", description="Set that the units left out here come from"
     )
-    pressure: Annotated[str, Choice(("inHg", "hPa", "kPa", "mmHg", "mbar"))] | None = Field(
+    pressure: Annotated[str, Choice(PRESSURES)] | None = Field(
         None, description="Unit of manifold pressure"
     )
-    fuel_flow: Annotated[str, Choice(("gal/h", "l/h", "impgal/h"))] | None = Field(
+    fuel_flow: Annotated[str, Choice((*VOLUME_FLOWS, *MASS_FLOWS))] | None = Field(
         None, description="Unit of fuel flow"
     )
-    speed: Annotated[str, Choice(("kt", "mph", "km/h"))] | None = Field(
-        None, description="Unit of airspeed"
-    )
+    speed: Annotated[str, Choice(SPEEDS)] | None = Field(None, description="Unit of airspeed")
     temperature: Annotated[str, Choice(("degC", "degF"))] | None = Field(
         None, description="Unit of temperature"
     )
@@ -68,6 +72,24 @@ class UnitsSection(Section):
             if (value := getattr(self, key)) is not None
         }
         return replace(UNIT_SETS[self.set], **stated)
+
+
+class SecondUnitsSection(Section):
+    """Units that numbers of the tables are printed in once more, in small type."""
+
+    pressure: Annotated[str, Choice(PRESSURES)] | None = Field(
+        None, description="Second unit of manifold pressure"
+    )
+    fuel_flow: Annotated[str, Choice((*VOLUME_FLOWS, *MASS_FLOWS))] | None = Field(
+        None, description="Second unit of fuel flow; of volume where the first is, else of mass"
+    )
+    speed: Annotated[str, Choice(SPEEDS)] | None = Field(
+        None, description="Second unit of airspeed"
+    )
+
+    def second_units(self) -> SecondUnits:
+        """Return the units."""
+        return SecondUnits(self.pressure, self.fuel_flow, self.speed)
 
 
 _HAIR = 1e-9  # what converting a unit may leave of a share, or of a metre
@@ -151,7 +173,10 @@ class CardSection(Section):
         "us",
         description="Units of the card: the name of a set (us where left out), or unit by unit",
     )
-    paper: Annotated[str, Choice(("half-letter", "A5", "letter", "A4"))] = Field(
+    second_units: SecondUnitsSection | None = Field(
+        None, description="Units in small type beside the first; none where left out"
+    )
+    paper: Annotated[str, Choice(("half-letter", "A5", "A6", "letter", "A4"))] = Field(
         "half-letter",
         description="Paper; letter and A4 carry two pages each; half-letter where left out",
     )
@@ -175,10 +200,31 @@ class CardSection(Section):
         for index, name in enumerate(self.mixtures or ()):
             if name in (self.mixtures or ())[:index]:
                 raise wrong(f"{name!r} is listed twice", "each once", at=("mixtures", index))
+        self._check_second_units()
         for key, kept in (("percent_powers", self._powers()), ("altitudes", self._altitudes())):
             if not kept:
                 raise wrong("none of them lies within break_in", "one or more that do", at=(key,))
         return self
+
+    def _unit_set(self) -> UnitSet:
+        """Return the first units."""
+        return UNIT_SETS[self.units] if isinstance(self.units, str) else self.units.unit_set()
+
+    def _check_second_units(self) -> None:
+        """Require second units to differ from the first and to need no fuel density."""
+        if self.second_units is None:
+            return
+        first, second = self._unit_set(), self.second_units.second_units()
+        for key in ("pressure", "fuel_flow", "speed"):
+            if getattr(second, key) == getattr(first, key):
+                raise wrong("is the first unit as well", "another unit", at=("second_units", key))
+        same = (first.fuel_flow in MASS_FLOWS) == (second.fuel_flow in MASS_FLOWS)
+        if second.fuel_flow is not None and not same:
+            raise wrong(
+                "turns volume into mass or mass into volume",
+                "a unit of volume where the first is one, else of mass",
+                at=("second_units", "fuel_flow"),
+            )
 
     def _powers(self) -> list[float]:
         """Return the powers that are shown."""
@@ -213,7 +259,7 @@ class CardSection(Section):
         kind: Literal["density", "pressure"] = (
             "density" if self.altitude_kind == "density" else "pressure"
         )
-        units = UNIT_SETS[self.units] if isinstance(self.units, str) else self.units.unit_set()
+        units = self._unit_set()
         return CardChoices(
             rpm=tuple(self.rpm),
             power_fraction=tuple(self._powers()),
@@ -223,6 +269,7 @@ class CardSection(Section):
             mass=tuple(self.masses) if self.masses else (gross_mass,),
             mixtures=tuple(self.mixtures) if self.mixtures else mixtures,
             units=units,
+            second_units=self.second_units.second_units() if self.second_units else IN_ONE_UNIT,
             paper=self.paper,
             relative_humidity=self.relative_humidity,
             break_in=self.break_in.break_in() if self.break_in else None,

@@ -131,7 +131,10 @@ card:
 #-  relative_humidity: 50 %    # dry air where left out
   units: us                    # us, metric, or unit by unit: {{set: us, temperature: degF}} with
                                # keys set, pressure, fuel_flow, speed, temperature, altitude, mass
-  paper: half-letter           # half-letter, A5, or two-up on letter or A4
+#-  second_units:              # in small type beside the first
+#-    fuel_flow: l/h
+#-    pressure: hPa
+  paper: half-letter           # half-letter, A5, A6, or two-up on letter or A4
 #-  break_in:                  # a fresh engine: narrows the card to the operator's band, ceiling
 #-    least_power: 60 %
 #-    greatest_power: 75 %

@@ -184,7 +184,7 @@ def _wind(value: float) -> str:
 def _range(card: Card, table: RangeTable) -> Listing:
     units = card.choices.units
     fuel, distance = sign(fuel_unit(units.fuel_flow)), distance_sign(card)
-    places = 0 if fuel not in ("gal", "impgal") else 1
+    places = 1 if "gal" in fuel else 0
 
     def amount(value: float) -> str:
         text = number(value, places)

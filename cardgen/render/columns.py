@@ -13,6 +13,8 @@ from cardgen.render.wording import (
     altitude_label,
     cell_texts,
     number,
+    second_texts,
+    second_units,
     shows_temperature,
     sign,
     temperature_label,
@@ -84,6 +86,8 @@ class Columns:
     speed_width: float
     mark_width: float  # 0 where no cell is at full throttle
     mark_inline: bool
+    second_pressure_width: float  # 0 where pressure is in one unit
+    seconds_below: bool  # whether numbers in second units take a line of their own
     content_width: float
     column_width: float
 
@@ -163,18 +167,30 @@ def _columns_of(
     def widest(texts: Iterable[str], face: Face, size: float) -> float:
         return max((width(text, face, size) for text in set(texts)), default=0.0)
 
+    seconds = _seconds(edition, index, columns, across)
+    small = [
+        max(
+            widest((texts[k] or "" for texts in seconds), "regular", NOTE),
+            width(sign(unit), "regular", NOTE) if unit else 0.0,
+        )
+        for k, unit in enumerate(second_units(card))
+    ]
     pressure = max(
         widest((cell[0] for cell in cells), "bold", style.setting),
         width(sign(units.pressure), "regular", NOTE),
+        0.0 if style.stacked else small[0],
     )
     flow = max(
         widest((cell[1] for cell in values), "regular", style.figure),
         width(sign(units.fuel_flow), "regular", NOTE),
+        small[1],
     )
     speed = max(
         widest((cell[2] for cell in values), "regular", style.figure),
         width(sign(units.speed), "regular", NOTE),
+        small[2],
     )
+    beside = GAP + small[0] if style.stacked and small[0] else 0.0
     mark = widest(marks, "bold", NOTE) + 2.0 * FRAME_PAD if marks else 0.0
     altitude = 2.0 * PAD + max(
         widest((number(value) for value in table.altitude), "bold", style.figure),
@@ -191,7 +207,7 @@ def _columns_of(
     share = (measure - altitude - temperature * groups) / len(columns)
     pair = flow + GAP + speed
     if style.stacked:
-        bare, marked = max(pressure, pair), max(pressure + GAP + mark, pair)
+        bare, marked = max(pressure + beside, pair), max(pressure + beside + GAP + mark, pair)
     else:
         bare, marked = pressure + GAP + pair, pressure + GAP + pair + GAP + mark
     inline = bool(marks) and marked + 2.0 * style.pad <= share
@@ -211,8 +227,27 @@ def _columns_of(
         speed_width=speed,
         mark_width=mark,
         mark_inline=inline,
+        second_pressure_width=small[0],
+        seconds_below=any(small[1:]) or (bool(small[0]) and not style.stacked),
         content_width=content,
         column_width=min(share, GREATEST_SLACK * (content + 2.0 * style.pad)),
+    )
+
+
+@lru_cache(maxsize=256)
+def _seconds(
+    edition: Edition, index: int, columns: tuple[tuple[int, int], ...], across: bool
+) -> frozenset[tuple[str | None, str | None, str | None]]:
+    """Return the different numbers in second units of some columns of a table."""
+    card, table = edition.card, edition.card.tables[index]
+    if not any(second_units(card)):
+        return frozenset()
+    temperatures = (-1,) if across else range(len(table.isa_deviation))
+    return frozenset(
+        second_texts(card, table, cell_index((altitude, temperature), column))
+        for altitude in range(len(table.altitude))
+        for temperature in temperatures
+        for column in columns
     )
 
 

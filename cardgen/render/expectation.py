@@ -13,6 +13,7 @@ from cardgen.render.wording import (
     deviation_name,
     percent,
     reason_letter,
+    second_numbers,
     shows_temperature,
 )
 from cardgen.tables.card import Card, CardTable, CellState
@@ -108,6 +109,12 @@ def expected_cell(
     if state is CellState.FULL_THROTTLE:
         power = math.floor(float(table.percent_power[at]) + EXACT)
         expected.append(("full-throttle mark", f"{FULL_THROTTLE} {power}%"))
+    names = ("second manifold pressure", "second fuel flow", "second true airspeed")
+    expected += [
+        (name, value)
+        for name, value in zip(names, second_numbers(card, table, at), strict=True)
+        if value is not None
+    ]
     return expected
 
 

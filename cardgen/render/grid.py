@@ -16,6 +16,8 @@ from cardgen.render.wording import (
     mass_text,
     number,
     percent,
+    second_texts,
+    second_units,
     sign,
     temperature_label,
 )
@@ -60,7 +62,7 @@ def title_height(grid: Grid, continued: str) -> float:
 
 def head_height(grid: Grid) -> float:
     """Return the height of the column heads [pt]."""
-    lines = 2 if grid.style.stacked else 1
+    lines = (2 if grid.style.stacked else 1) + grid.columns.seconds_below
     groups = _group_height(grid)
     return groups + grid.style.lead + LEADING * NOTE * lines + 3.0
 
@@ -78,6 +80,8 @@ def row_height(grid: Grid, row: tuple[int, int]) -> float:
         for column in grid.part.columns
     ):
         height += LEADING * grid.style.figure
+    if grid.columns.seconds_below:
+        height += LEADING * NOTE
     return height
 
 
@@ -223,7 +227,31 @@ def _heads(grid: Grid, x: float, top: float) -> list[Box]:
         flow_end, speed_end = _ends(grid, at)
         boxes.append(_right_run(sign(units.fuel_flow), flow_end, y, "regular", NOTE))
         boxes.append(_right_run(sign(units.speed), speed_end, y, "regular", NOTE))
+    boxes += _second_heads(grid, x, y)
+    if grid.columns.seconds_below:
+        y -= LEADING * NOTE
     boxes.append(Rule(x, y - 4.0, x + _total_width(grid), y - 4.0, thickness=1.2))
+    return boxes
+
+
+def _second_heads(grid: Grid, x: float, y: float) -> list[Box]:
+    """Return the second units under the first, or beside the pressure where it stands alone."""
+    boxes: list[Box] = []
+    pressure, flow, speed = second_units(grid.card)
+    for _, at, _ in _columns(grid, x):
+        start = _content_at(grid, at)
+        flow_end, speed_end = _ends(grid, at)
+        below = y - LEADING * NOTE
+        if pressure and grid.style.stacked:
+            beside = start + grid.columns.pressure_width + GAP + grid.columns.second_pressure_width
+            boxes.append(_right_run(sign(pressure), beside, y + LEADING * NOTE, "regular", NOTE))
+        elif pressure:
+            end = start + grid.columns.pressure_width
+            boxes.append(_right_run(sign(pressure), end, below, "regular", NOTE))
+        if flow:
+            boxes.append(_right_run(sign(flow), flow_end, below, "regular", NOTE))
+        if speed:
+            boxes.append(_right_run(sign(speed), speed_end, below, "regular", NOTE))
     return boxes
 
 
@@ -288,8 +316,12 @@ def _cell(
     if len(texts) == 4:
         if not columns.mark_inline:
             mark_x, mark_y = start, below - LEADING * style.figure
+            if columns.seconds_below:
+                mark_y -= LEADING * NOTE
         elif style.stacked:
             mark_x, mark_y = start + columns.pressure_width + GAP, y
+            if columns.second_pressure_width:
+                mark_x += columns.second_pressure_width + GAP
         else:
             mark_x, mark_y = speed_end + GAP, y
         boxes.append(Run(mark_x + FRAME_PAD, mark_y, texts[3], "bold", NOTE))
@@ -302,6 +334,21 @@ def _cell(
                 0.8,
             )
         )
+    second = second_texts(grid.card, grid.table, index)
+    under = below - LEADING * NOTE
+    pressure_end = start + columns.pressure_width
+    if style.stacked:
+        pressure_end += GAP + columns.second_pressure_width
+    places = (
+        (pressure_end, y if style.stacked else under),
+        (flow_end, under),
+        (speed_end, under),
+    )
+    boxes += [
+        _right_run(text, end, base, "regular", NOTE)
+        for text, (end, base) in zip(second, places, strict=True)
+        if text is not None
+    ]
     return boxes
 
 

@@ -25,6 +25,8 @@ from cardgen.render.wording import (
     note_sections,
     number,
     percent,
+    second_texts,
+    second_units,
     shows_temperature,
     sign,
     stamps,
@@ -161,6 +163,9 @@ def _table(edition: Edition, table: CardTable) -> str:
     card, units = edition.card, edition.card.choices.units
     whose = f"{edition.identity.registration}. {digest_text(card, edition.issue, None)}"
     under = f"{sign(units.pressure)}, {sign(units.fuel_flow)}, {sign(units.speed)}"
+    small = [sign(unit) for unit in second_units(card) if unit]
+    if small:
+        under += f"; small {', '.join(small)}"
     heads = "".join(
         f'<th scope="col">{number(rpm)} <small>rpm: {escape(under)}</small></th>'
         for rpm in table.rpm
@@ -235,9 +240,12 @@ def _cell(card: Card, table: CardTable, at: tuple[int, int, int]) -> str:
         return f'<td class="{_CLASSES[state]}" {place}><b>{escape(texts[0])}</b></td>'
     pressure, flow, speed, *mark = texts
     full = f' <span class="full">{escape(mark[0])}</span>' if mark else ""
+    small = " ".join(
+        f"<small>{text}</small>" for text in second_texts(card, table, at) if text is not None
+    )
     return (
         f'<td {place}><b>{pressure}</b> <span class="flow">{flow}</span>'
-        f' <span class="speed">{speed}</span>{full}</td>'
+        f' <span class="speed">{speed}</span>{full}{small}</td>'
     )
 
 
@@ -248,10 +256,17 @@ def _says(card: Card, table: CardTable, at: tuple[int, int, int]) -> str:
     if len(texts) == 1:
         mark, meaning = legend(card, [state_of(table, at)])[0]
         return f"{mark}: {meaning}"
-    says = (
-        f"{texts[0]} {sign(units.pressure)} at {number(table.rpm[at[2]])} rpm:"
-        f" {texts[1]} {sign(units.fuel_flow)}, {texts[2]} {sign(units.speed)}"
+    pressure, flow, speed = (
+        f"{text} {sign(unit)}" + (f" ({small} {sign(other)})" if small and other else "")
+        for text, unit, small, other in zip(
+            texts[:3],
+            (units.pressure, units.fuel_flow, units.speed),
+            second_texts(card, table, at),
+            second_units(card),
+            strict=True,
+        )
     )
+    says = f"{pressure} at {number(table.rpm[at[2]])} rpm: {flow}, {speed}"
     if len(texts) == 4:
         says += f". Full throttle, gives {texts[3].removeprefix(FULL_THROTTLE).strip()}"
     return f"{says}. {SUPPLEMENTARY.partition('.')[0].capitalize()}: the flight manual governs."

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from html.parser import HTMLParser
 from typing import Any
 
@@ -226,7 +227,7 @@ def _check_says(card: Card, table: CardTable, says: list[str]) -> None:
     if len(says) != len(cells):
         raise ReleaseError("read-back: the look-up of the HTML card misses cells")
     for at, text in zip(cells, says, strict=True):
-        words = text.replace(",", " ").replace(":", " ").replace("%.", "%").split()
+        words = re.sub(r"[,:()]", " ", text).replace("%.", "%").split()
         for what, expected in expected_cell(card, table, at):
             wanted = expected.rpartition(" ")[2] if isinstance(expected, str) else expected
             if not any(is_right(word, wanted) for word in words):

@@ -41,6 +41,7 @@ from cardgen.render.wording import (
     note_sections,
     page_text,
     percent,
+    second_units,
     shows_temperature,
     sign,
     stamps,
@@ -200,6 +201,7 @@ def _read_tables(
             temperature_label(card),
             *(sign(u) for u in (card.choices.units.pressure, card.choices.units.fuel_flow)),
             sign(card.choices.units.speed),
+            *(sign(unit) for unit in second_units(card) if unit),
         }
         while first < len(words) and words[first].text in labels:
             first += 1

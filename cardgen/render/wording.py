@@ -9,6 +9,7 @@ from typing import Final
 from cardgen.errors import ReleaseError
 from cardgen.profile.document import Identity, PartIdentity
 from cardgen.tables.card import Card, CardTable, CellState, Section
+from cardgen.tables.printed import in_second_units, places_of
 from cardgen.units import to_unit
 
 SUPPLEMENTARY: Final = "SUPPLEMENTARY. The approved flight manual, placards and markings govern."
@@ -23,7 +24,14 @@ FULL_THROTTLE: Final = "FT"
 OUT_OF_REACH: Final = "\N{EM DASH}"
 OUTSIDE_EVIDENCE: Final = "?"
 
-_SIGNS: Final[dict[str, str]] = {"degC": "°C", "degF": "°F"}
+_SIGNS: Final[dict[str, str]] = {
+    "degC": "°C",
+    "degF": "°F",
+    "l/h": "L/h",
+    "l": "L",
+    "impgal/h": "imp gal/h",
+    "impgal": "imp gal",
+}
 _ALTITUDE: Final = {
     "density": ("DA", "density altitude"),
     "pressure": ("PA", "pressure altitude"),
@@ -126,6 +134,39 @@ def cell_texts(card: Card, table: CardTable, at: tuple[int, int, int]) -> tuple[
     speed = number(float(table.true_airspeed[at]), card.decimals.speed)
     if state is CellState.FULL_THROTTLE:
         return pressure, flow, speed, full_throttle_mark(float(table.percent_power[at]))
+    return pressure, flow, speed
+
+
+def second_units(card: Card) -> tuple[str | None, str | None, str | None]:
+    """Return the second units of pressure, fuel flow and speed."""
+    second = card.choices.second_units
+    return second.pressure, second.fuel_flow, second.speed
+
+
+def second_numbers(
+    card: Card, table: CardTable, at: tuple[int, int, int]
+) -> tuple[float | None, float | None, float | None]:
+    """Return the numbers of a cell in the second units, None where there is none."""
+    shown = CellState(int(table.state[at])) <= CellState.FULL_THROTTLE
+    if not shown or not any(second_units(card)):
+        return None, None, None
+    return in_second_units(
+        float(table.manifold_pressure[at]),
+        float(table.fuel_flow[at]),
+        float(table.true_airspeed[at]),
+        units=card.choices.units,
+        second=card.choices.second_units,
+    )
+
+
+def second_texts(
+    card: Card, table: CardTable, at: tuple[int, int, int]
+) -> tuple[str | None, str | None, str | None]:
+    """Return pressure, fuel flow and speed of a cell in the second units, as printed."""
+    pressure, flow, speed = (
+        None if value is None else number(value, places_of(unit or ""))
+        for value, unit in zip(second_numbers(card, table, at), second_units(card), strict=True)
+    )
     return pressure, flow, speed
 
 
@@ -241,6 +282,9 @@ def units_text(card: Card) -> str:
         f"true airspeed {sign(units.speed)}",
         f"{long} ({short}) {sign(units.altitude)}",
     ]
+    for k, unit in enumerate(second_units(card)):
+        if unit is not None:
+            parts[k] += f" (small {sign(unit)})"
     if shows_temperature(card):
         parts.append(f"outside air temperature (OAT) {sign(units.temperature)}")
     return "Units: " + ", ".join(parts)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Literal
+from typing import Final, Literal
 
 from cardgen.limits.kinds import Source
 
@@ -18,6 +18,18 @@ class UnitSet:
     temperature: str = "degC"
     altitude: str = "ft"
     mass: str = "lb"
+
+
+@dataclass(frozen=True, slots=True)
+class SecondUnits:
+    """Units that numbers are printed in once more, in small type; None where in one unit only."""
+
+    pressure: str | None = None
+    fuel_flow: str | None = None
+    speed: str | None = None
+
+
+IN_ONE_UNIT: Final = SecondUnits()
 
 
 @dataclass(frozen=True, slots=True)
@@ -45,6 +57,7 @@ class CardChoices:
     mass: tuple[float, ...]
     mixtures: tuple[str, ...]
     units: UnitSet = UnitSet()
+    second_units: SecondUnits = IN_ONE_UNIT
     paper: str = "half-letter"
     relative_humidity: float = 0.0
     break_in: BreakIn | None = None  # powers and altitudes above are already narrowed to it

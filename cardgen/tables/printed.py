@@ -10,7 +10,7 @@ import numpy as np
 import numpy.typing as npt
 
 from cardgen.limits import MessageUnits
-from cardgen.tables.choices import UnitSet
+from cardgen.tables.choices import SecondUnits, UnitSet
 from cardgen.units import find_unit, from_unit, to_unit
 
 FloatArray = npt.NDArray[np.float64]
@@ -22,8 +22,10 @@ _PLACES: Final[Mapping[str, int]] = {
     "hPa": 0,
     "kPa": 1,
     "mmHg": 0,
+    "mbar": 0,
     "gal/h": 1,
-    "L/h": 0,
+    "impgal/h": 1,
+    "l/h": 0,
     "lb/h": 0,
     "kg/h": 0,
 }
@@ -116,6 +118,58 @@ def rounded_down(values: FloatArray, places: int) -> FloatArray:
     """
     scale = 10.0**places
     return np.asarray(np.round(np.floor(values * scale + _HAIR) / scale, places))
+
+
+def in_second_units(
+    pressure: float, fuel_flow: float, speed: float, *, units: UnitSet, second: SecondUnits
+) -> tuple[float | None, float | None, float | None]:
+    """Printed numbers in the second units of a card.
+
+    Parameters
+    ----------
+    pressure, fuel_flow, speed : float
+        As printed in the first units [-]
+    units : UnitSet
+        First units [-]
+    second : SecondUnits
+        Second units; that of fuel flow has the dimension of the first [-]
+
+    Returns
+    -------
+    tuple of float or None
+        Pressure to the nearest step, because it is the same setting; fuel flow rounded up and speed
+        rounded down; None where there is no second unit [-]
+    """
+
+    def turned(value: float, first: str, other: str | None) -> FloatArray | None:
+        return None if other is None else np.asarray(to_unit(from_unit(value, first), other))
+
+    turns = (
+        (turned(pressure, units.pressure, second.pressure), second.pressure, rounded),
+        (turned(fuel_flow, units.fuel_flow, second.fuel_flow), second.fuel_flow, rounded_up),
+        (turned(speed, units.speed, second.speed), None, rounded_down),
+    )
+    first, middle, last = (
+        None if value is None else float(toward(value, _PLACES.get(unit or "", 0)))
+        for value, unit, toward in turns
+    )
+    return first, middle, last
+
+
+def places_of(unit: str) -> int:
+    """Decimal places that a unit of pressure or fuel flow is printed with.
+
+    Parameters
+    ----------
+    unit : str
+        Unit [-]
+
+    Returns
+    -------
+    int
+        Places; none for a unit of speed [-]
+    """
+    return _PLACES.get(unit, 0)
 
 
 def fuel_flow_in(mass_flow: FloatArray, unit: str, *, fuel_density: float) -> FloatArray:
