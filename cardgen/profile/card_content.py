@@ -115,7 +115,7 @@ def _evidence_lines(profile: Profile, learned: Learned | None) -> tuple[str, ...
     if covers is not None:
         lines.append(
             f"The evidence covers {covers.rpm[0]:.0f}-{covers.rpm[1]:.0f} rpm and "
-            f"{covers.power[0] / profile.percent_of.power:.0%}-"
-            f"{covers.power[1] / profile.percent_of.power:.0%} power."
+            f"{100.0 * covers.power[0] / profile.percent_of.power:.0f} to "
+            f"{100.0 * covers.power[1] / profile.percent_of.power:.0f} % power."
         )
     return tuple(lines)

@@ -13,6 +13,8 @@ from functools import cache
 from pathlib import Path
 from typing import Final, Literal
 
+from cardgen.render.packaged import damaged, packaged
+
 Face = Literal["regular", "bold"]
 
 FACES: Final[dict[Face, Path]] = {
@@ -26,6 +28,13 @@ CAP_HEIGHT: Final = 1456 / 2048
 DESCENT: Final = 430 / 2048
 
 BREAKS: Final = re.compile(r"[ \t\n\r]+")  # a no-break space keeps a number with its unit
+
+# A number and its unit, and the number of a section or revision, never part at the end of a line.
+_PAIRS: Final = re.compile(
+    r"(?<=[0-9]) (?=(?:%|°[CF]|(?:rpm|inHg|hPa|kPa|cmHg|mmHg|mbar|kt|mph|km/h|nm|mi|km|ft|m|gal|L"
+    r"|lb|kg|hp|kW|min|h|CAS|gal/h|L/h|lb/h|kg/h)(?![\w/])))"
+    r"|(?<=section) (?=\S)|(?<=revision) (?=\S)|(?<=note) (?=[0-9])|(?<=page) (?=[0-9])"
+)
 
 SUBSTITUTES: Final[dict[str, str]] = {
     "\t": " ",
@@ -63,18 +72,30 @@ def metrics(face: Face) -> Metrics:
     -------
     Metrics
         Advance widths over the size [-]
+
+    Raises
+    ------
+    ReleaseError
+        The file is missing or damaged.
     """
-    data = FACES[face].read_bytes()
+    data = packaged(FACES[face])
+    try:
+        return Metrics(_advances(data))
+    except (struct.error, KeyError, ValueError, ZeroDivisionError) as error:
+        raise damaged(FACES[face]) from error
+
+
+def _advances(data: bytes) -> dict[int, float]:
+    """Return the width over the size of every letter of a TrueType file."""
     tables = _directory(data)
     units_per_em = struct.unpack_from(">H", data, tables["head"] + 18)[0]
     count = struct.unpack_from(">H", data, tables["hhea"] + 34)[0]
     long_metrics = struct.unpack_from(f">{2 * count}H", data, tables["hmtx"])
     widths = [width / units_per_em for width in long_metrics[::2]]
-    advance = {
+    return {
         code: widths[min(glyph, count - 1)]
         for code, glyph in _character_map(data, tables["cmap"]).items()
     }
-    return Metrics(advance)
 
 
 def _directory(data: bytes) -> dict[str, int]:
@@ -191,7 +212,8 @@ def wrap(text: str, face: Face, *, size: float, measure: float) -> tuple[str, ..
     """
     lines: list[str] = []
     line = ""
-    for word in (printable(part) for part in BREAKS.split(text.strip())):
+    bound = _PAIRS.sub("\N{NO-BREAK SPACE}", text.strip())
+    for word in (printable(part) for part in BREAKS.split(bound)):
         longer = f"{line} {word}" if line else word
         if width(longer, face, size) <= measure:
             line = longer

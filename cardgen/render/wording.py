@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Iterable
 from typing import Final
 
 from cardgen.errors import ReleaseError
 from cardgen.profile.document import Identity, PartIdentity
 from cardgen.tables.card import Card, CardTable, CellState, Section
-from cardgen.tables.printed import in_second_units, places_of
+from cardgen.tables.printed import in_second_units, places_of, unit_sign
 from cardgen.units import to_unit
 
 SUPPLEMENTARY: Final = "SUPPLEMENTARY. The approved flight manual, placards and markings govern."
@@ -24,18 +25,32 @@ FULL_THROTTLE: Final = "FT"
 OUT_OF_REACH: Final = "\N{EM DASH}"
 OUTSIDE_EVIDENCE: Final = "?"
 
-_SIGNS: Final[dict[str, str]] = {
-    "degC": "°C",
-    "degF": "°F",
-    "l/h": "L/h",
-    "l": "L",
-    "impgal/h": "imp gal/h",
-    "impgal": "imp gal",
-}
+sign = unit_sign
+
 _ALTITUDE: Final = {
     "density": ("DA", "density altitude"),
     "pressure": ("PA", "pressure altitude"),
 }
+
+
+_MINUS: Final = re.compile(r"(?<![\w.)\]-])-(?=[0-9])")
+_DEGREE: Final = re.compile(r"\bdeg([CF])\b")
+
+
+def set_text(text: str) -> str:
+    """Return words of ours as a printer would set them: a true minus, "°F" for "degF".
+
+    Parameters
+    ----------
+    text : str
+        A sentence [-]
+
+    Returns
+    -------
+    str
+        The same words [-]
+    """
+    return _MINUS.sub("\N{MINUS SIGN}", _DEGREE.sub(r"°\1", text))
 
 
 def number(value: float, decimals: int = 0) -> str:
@@ -64,22 +79,6 @@ def number(value: float, decimals: int = 0) -> str:
     if float(text) == 0.0:
         text = text.removeprefix("-")
     return text.replace("-", "\N{MINUS SIGN}")
-
-
-def sign(unit: str) -> str:
-    """Return a unit as printed, "°C" for "degC".
-
-    Parameters
-    ----------
-    unit : str
-        Name of the unit [-]
-
-    Returns
-    -------
-    str
-        Its printed sign [-]
-    """
-    return _SIGNS.get(unit, unit)
 
 
 def altitude_label(card: Card) -> str:
@@ -196,7 +195,7 @@ def mass_text(card: Card, mass: float) -> str:
 
 def basis_text(table: CardTable) -> str:
     """Return how the mixture is set."""
-    return f"Mixture: {table.mixture_basis or 'basis not stated'}"
+    return f"Mixture: {set_text(table.mixture_basis) or 'basis not stated'}"
 
 
 def legend(card: Card, states: Iterable[tuple[CellState, int]]) -> tuple[tuple[str, str], ...]:
@@ -219,7 +218,7 @@ def legend(card: Card, states: Iterable[tuple[CellState, int]]) -> tuple[tuple[s
     for index, reason in enumerate(card.reasons):
         if (CellState.FORBIDDEN, index) in occurring:
             source = f" Source: {reason.source}" if reason.source else " Source: not stated"
-            text = reason.text[:1].upper() + reason.text[1:].rstrip(".")
+            text = set_text(reason.text[:1].upper() + reason.text[1:].rstrip("."))
             lines.append((reason.letter, f"Forbidden. {text}.{source}"))
     kinds = {state for state, _ in occurring}
     if CellState.FULL_THROTTLE in kinds:
@@ -397,8 +396,8 @@ def note_sections(card: Card, identity: Identity) -> tuple[Section, ...]:
         f"Approved flight manual: {handbook or 'not stated'}",
     )
     sections = (
-        *card.sections,
-        Section("Notes", card.notes),
+        *(Section(one.title, tuple(map(set_text, one.lines))) for one in card.sections),
+        Section("Notes", tuple(map(set_text, card.notes))),
         Section(
             "Tables of this card",
             tuple(

@@ -32,6 +32,7 @@ from cardgen.tables.printed import (
     rounded_down,
     rounded_up,
     temperature_step_in,
+    unit_sign,
 )
 from cardgen.tables.range import range_tables
 from cardgen.tables.rows import situation_of
@@ -403,12 +404,13 @@ def _temperature_notes(
         for value, count in zip(worst, (places.pressure, places.fuel_flow, 0), strict=True)
     )
     step = float(temperature_step_in(TEMPERATURE_SPREAD, units.temperature))
-    degree = {"degC": "°C", "degF": "°F"}.get(units.temperature, units.temperature)
     return (
         "Rows are density altitudes, computed in air of standard temperature. In air up to "
-        f"{step:.0f} {degree} warmer or colder, at the same density altitude, the right numbers "
-        f"differ by at most {pressure_error:.{places.pressure}f} {units.pressure}, "
-        f"{flow_error:.{places.fuel_flow}f} {units.fuel_flow} and {speed_error:.0f} {units.speed}.",
+        f"{step:.0f} {unit_sign(units.temperature)} warmer or colder, at the same density "
+        "altitude, the right numbers differ by at most "
+        f"{pressure_error:.{places.pressure}f} {units.pressure}, "
+        f"{flow_error:.{places.fuel_flow}f} {unit_sign(units.fuel_flow)} and "
+        f"{speed_error:.0f} {units.speed}.",
     )
 
 

@@ -30,6 +30,15 @@ _PLACES: Final[Mapping[str, int]] = {
     "kg/h": 0,
 }
 
+_SIGNS: Final[Mapping[str, str]] = {
+    "degC": "°C",
+    "degF": "°F",
+    "l/h": "L/h",
+    "l": "L",
+    "impgal/h": "imp gal/h",
+    "impgal": "imp gal",
+}
+
 # A value within this share of a printed step of a whole step is that step: floating-point noise
 # must not turn 10.0 into 10.1.
 _HAIR: Final = 1e-6
@@ -118,6 +127,22 @@ def rounded_down(values: FloatArray, places: int) -> FloatArray:
     """
     scale = 10.0**places
     return np.asarray(np.round(np.floor(values * scale + _HAIR) / scale, places))
+
+
+def unit_sign(unit: str) -> str:
+    """Sign of a unit as printed, "°C" for "degC".
+
+    Parameters
+    ----------
+    unit : str
+        Name of the unit [-]
+
+    Returns
+    -------
+    str
+        Its printed sign [-]
+    """
+    return _SIGNS.get(unit, unit)
 
 
 def in_second_units(

@@ -16,7 +16,7 @@ from cardgen.limits import Verdict
 from cardgen.tables.back import Axis, Chart, Curve, Panel
 from cardgen.tables.chart import covered_by_evidence, multiples
 from cardgen.tables.choices import CardChoices
-from cardgen.tables.printed import fuel_flow_in
+from cardgen.tables.printed import fuel_flow_in, unit_sign
 from cardgen.tables.range import fuel_unit
 from cardgen.tables.rows import situation_of
 from cardgen.tables.solution import Model, solve
@@ -62,9 +62,9 @@ def speed_chart(model: Model, choices: CardChoices) -> Chart | None:
         return None
     speeds, flows = zip(*points, strict=True)
     across = _axis(f"True airspeed, {units.speed}", min(speeds), max(speeds), 5)
-    up = _axis(f"Fuel flow, {units.fuel_flow}", min(flows), max(flows), 4)
+    up = _axis(f"Fuel flow, {unit_sign(units.fuel_flow)}", min(flows), max(flows), 4)
     distance = {"kt": "nm", "mph": "mi", "km/h": "km"}[units.speed]
-    per = f"{distance}/{fuel_unit(units.fuel_flow)}"
+    per = f"{distance}/{unit_sign(fuel_unit(units.fuel_flow))}"
     rays = tuple(_rays(across, up, per))
     at = ", ".join(f"{float(to_unit(level, units.altitude)):.0f}" for level in levels)
     kind = "density" if choices.altitude_kind == "density" else "pressure"
