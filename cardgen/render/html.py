@@ -10,6 +10,7 @@ from typing import Final
 from cardgen.render.edition import Edition
 from cardgen.render.expectation import cells_of, state_of
 from cardgen.render.html_beside import chart_figures, listing_tables
+from cardgen.render.packaged import packaged
 from cardgen.render.wording import (
     FULL_THROTTLE,
     SUPPLEMENTARY,
@@ -50,7 +51,7 @@ _CLASSES: Final = {
 
 @cache
 def _asset(name: str) -> str:
-    return (Path(__file__).parent / "screen" / name).read_text(encoding="utf-8")
+    return packaged(Path(__file__).parent / "screen" / name).decode()
 
 
 def to_html(edition: Edition) -> bytes:
