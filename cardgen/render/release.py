@@ -14,6 +14,7 @@ made: where another run released the same card meanwhile, it is made again for t
 from __future__ import annotations
 
 import hashlib
+import re
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
@@ -33,6 +34,8 @@ from cardgen.render.history import (
 Make = Callable[[int, int | None], Mapping[str, bytes]]
 """From issue number and the issue it replaces to finished files by suffix, already read back."""
 
+
+_STATED_ISSUE: Final = re.compile(rb"cruise card, issue ([0-9]{1,6})")  # in a card's title
 
 _MOST_TRIES: Final = 5  # runs that release one card at the same moment are a mistake, not a load
 
@@ -152,6 +155,7 @@ def release_card(folder: Path, name: str, *, fingerprint: Fingerprint, make: Mak
             history = load_history(folder)
             if _last(folder, name, history) != last:
                 continue
+            _refuse_later_card(folder, name, history.get(name, ()), files)
             earlier = _settled(folder, name, history)
             if issue.state == "released":
                 earlier = earlier[:-1]
@@ -239,6 +243,27 @@ def _complete(
     if settled != history or last.state == "reserved":
         save_history(folder, settled)
     return tuple(paths.values())
+
+
+def _refuse_later_card(
+    folder: Path, name: str, issues: Sequence[Issue], files: Mapping[str, bytes]
+) -> None:
+    """Refuse to write over a card of a later issue than the history knows.
+
+    A folder synced from elsewhere, or restored in part, may hold a history older than its cards.
+    """
+    known = {digest for issue in issues for digest in issue.files.values()}
+    for suffix in ("pdf", "html"):
+        path = folder / f"{name}.{suffix}"
+        content = read_if_there(path)
+        if content is None or content == files.get(suffix) or _sha256(content) in known:
+            continue
+        stated = _STATED_ISSUE.search(content)
+        if stated is not None and int(stated[1]) > len(issues):
+            raise ReleaseError(
+                f"{path}: is issue {int(stated[1])}, which {HISTORY_NAME} does not know, so its"
+                " number could be given twice; restore the newer history or move the card away"
+            )
 
 
 def _refuse_unknown_cards(folder: Path, name: str) -> None:
