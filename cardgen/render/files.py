@@ -20,6 +20,8 @@ except ImportError:  # a platform without advisory locks: two runs at once are o
 LOCK_NAME: Final = ".issues.lock"
 _POLL: Final = 0.01  # between two tries for the lock [s]
 
+_OPENING: Final = os.O_WRONLY | os.O_CREAT | os.O_TRUNC | getattr(os, "O_NOFOLLOW", 0)
+
 _MEANINGS: Final[dict[int, str]] = {
     errno.ENOSPC: "the disk is full; free some room and run again",
     errno.EDQUOT: "the disk quota is used up; free some room and run again",
@@ -54,7 +56,9 @@ def write_whole(path: Path, content: bytes) -> None:
     # One fixed name beside the file: what a killed run leaves behind is overwritten by the next.
     beside = path.with_name(f".{path.name}.part")
     try:
-        with beside.open("wb") as file:
+        if beside.is_symlink():
+            beside.unlink()  # planted or left over: what it points to is nobody's business here
+        with open(os.open(beside, _OPENING, 0o666), "wb") as file:
             file.write(content)
             file.flush()
             os.fsync(file.fileno())
