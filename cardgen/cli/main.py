@@ -114,8 +114,9 @@ def run(arguments: list[str] | None = None) -> int:
     except click.Abort:
         click.echo("Stopped; nothing was changed.", err=True)
         return 2
-    except BrokenPipeError:
-        # The reader of a pipe left, as `head` does. Python must not complain when it closes stdout.
+    except (BrokenPipeError, SystemExit):
+        # The reader of a pipe left, as `head` does, which click tells by leaving itself. Python
+        # must not complain when it closes stdout.
         sys.stderr.close()
         return 0
     except (CardgenError, OSError, MemoryError) as error:

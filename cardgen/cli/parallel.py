@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import multiprocessing
 import os
 import signal
@@ -71,7 +72,9 @@ def spread(
         max_tasks_per_child=_JOBS_PER_PROCESS,
     )
     try:
-        yield from pool.map(work, jobs)
+        with _undisturbed():  # the first job starts the processes
+            answers = pool.map(work, jobs)
+        yield from answers
     except BrokenProcessPool as error:
         raise ReleaseError(
             "a process that was making cards was ended from outside (out of memory?); cards told "
@@ -79,6 +82,19 @@ def spread(
         ) from error
     finally:
         pool.shutdown(cancel_futures=True)
+
+
+@contextlib.contextmanager
+def _undisturbed() -> Iterator[None]:
+    """Put off what the keyboard says until processes stand: those half started would complain."""
+    if not hasattr(signal, "pthread_sigmask"):
+        yield
+        return
+    before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+    try:
+        yield
+    finally:
+        signal.pthread_sigmask(signal.SIG_SETMASK, before)
 
 
 def _begin() -> None:
