@@ -176,8 +176,10 @@ def random_gauge(
     count = rng.randint(2, 5)
     ends = sorted((rng.uniform(x[0], x[1] * 0.8), rng.uniform(x[1] * 0.8, x[1] * 1.1)))
     places = np.linspace(*ends, count)
-    # Steps between points exceed what corrections differ by, so readings are told apart.
-    corrections = tuple(rng.uniform(-1.5, 1.5) * scale for _ in places)
+    corrections: tuple[float, ...] = ()
+    # As the profile demands, true values rise from point to point.
+    while not corrections or not (np.diff(places + np.array(corrections)) > 1.0).all():
+        corrections = tuple(rng.uniform(-1.5, 1.5) * scale for _ in places)
     return GaugeError(tuple(map(float, places)), corrections, band, True, "m", "2026-01-01")
 
 
