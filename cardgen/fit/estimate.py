@@ -1,13 +1,10 @@
 """Maximum a posteriori fit of an aircraft's parameters to its evidence.
 
-This is the only module that imports scipy, and it does so when it is called.
-
 References
 ----------
 .. [1] A. Tarantola, Inverse Problem Theory, SIAM 2005, section 3.2: least squares with priors,
    posterior covariance.
-.. [2] P. J. Huber, E. M. Ronchetti, Robust Statistics, Wiley 2009, chapter 7.
-.. [3] D. A. Belsley, E. Kuh, R. E. Welsch, Regression Diagnostics, Wiley 1980, section 2.1:
+.. [2] D. A. Belsley, E. Kuh, R. E. Welsch, Regression Diagnostics, Wiley 1980, section 2.1:
    the residual without a row from the residual with it and its leverage.
 """
 
@@ -21,19 +18,15 @@ import numpy.typing as npt
 
 from cardgen.errors import NoSolutionError
 from cardgen.fit.evidence import QUANTITIES, Evidence, standard_deviations
-from cardgen.fit.model import Subject, predict, predict_continued
+from cardgen.fit.loss import ROBUST_FROM, robust
+from cardgen.fit.model import Subject, predict, predict_continued, slopes
 from cardgen.fit.parameters import parameters, prior_covariance, prior_mean
+from cardgen.fit.search import difference_step, most_likely
 
 FloatArray = npt.NDArray[np.float64]
 
-ROBUST_FROM: Final = 2.0
-"""Residual, in standard deviations, beyond which it pulls less than its square [-]."""
-
 SCATTER_WEIGHT: Final = 6.0
 """How many rows of evidence the assumed scatter counts for, against the scatter seen [-]."""
-
-_STEP: Final = 1e-3  # of a prior deviation, for central differences
-_APPROACH: Final = (10.0,)  # deviations of the evidence, over the real ones, on the way
 
 
 @dataclass(frozen=True, slots=True)
@@ -138,59 +131,16 @@ def estimate(
     Notes
     -----
     Minimises the squares of the residuals over their deviations plus the squared distance from the
-    prior; residuals beyond `ROBUST_FROM` deviations count by the pseudo-Huber loss.
+    prior; residuals of many deviations count by the pseudo-Huber loss of `cardgen.fit.loss`.
     """
-    from scipy.optimize import least_squares  # noqa: PLC0415 - slow to import, needed only here
-
-    listed = parameters(subject.mixtures)
-    start = prior_mean(subject.aircraft, subject.mixtures)
-    prior = start if mean is None else mean
+    prior = prior_mean(subject.aircraft, subject.mixtures) if mean is None else mean
     spread = prior_covariance(subject.mixtures) if covariance is None else covariance
-    whiten = np.linalg.inv(np.linalg.cholesky(spread))
-    deviation = np.sqrt(np.diag(spread))
-    read = evidence.read()
-    known = ~np.isnan(read)
+    known = ~np.isnan(evidence.read())
     expected = standard_deviations(evidence)
-    lower = np.array([parameter.lower for parameter in listed])
-    upper = np.array([parameter.upper for parameter in listed])
-    step = np.minimum(_STEP * deviation, 0.25 * (upper - lower))
     _refuse_unanswered(predict_continued(subject, evidence, values=prior), known, evidence)
-
-    def errors(values: FloatArray, deviations: FloatArray) -> FloatArray:
-        said = predict_continued(subject, evidence, values=values)
-        return np.asarray(((said - read) / deviations)[known])
-
-    def improved(start: FloatArray, *, blunt: float, tolerance: float) -> FloatArray:
-        """Minimise from a start, with the deviations of the evidence `blunt` times as large."""
-        deviations = expected * blunt
-
-        def residuals(values: FloatArray) -> FloatArray:
-            return np.concatenate([_robust(errors(values, deviations)), whiten @ (values - prior)])
-
-        def jacobian(values: FloatArray) -> FloatArray:
-            bend = _robust_slope(errors(values, deviations))
-            slope = _slopes(subject, evidence, values=values, step=step) / deviations[..., None]
-            return np.concatenate([bend[:, None] * slope[known], whiten])
-
-        return np.asarray(
-            least_squares(
-                residuals,
-                start,
-                jac=jacobian,
-                bounds=(lower, upper),
-                x_scale=deviation,
-                xtol=tolerance,
-                ftol=tolerance,
-            ).x
-        )
-
-    # The robust loss is flat far from its middle and would stop there: approach it from evidence
-    # that is taken for less exact, which the squares near the middle of the loss still see.
-    found = np.clip(prior, lower + 1e-9, upper - 1e-9)
-    for blunt in _APPROACH:
-        found = improved(found, blunt=blunt, tolerance=1e-3)
-    found = improved(found, blunt=1.0, tolerance=1e-10)
+    found = most_likely(subject, evidence, deviations=expected, mean=prior, covariance=spread)
     _refuse_unanswered(predict(subject, evidence, values=found), known, evidence)
+    step = difference_step(subject.mixtures, spread)
     return _described(
         subject, evidence, values=found, prior=prior, spread=spread, step=step, expected=expected
     )
@@ -208,34 +158,6 @@ def _refuse_unanswered(
             f"({int(dumb.sum())} such rows); check the row's rpm, power and altitude, and the "
             "profile's engine, propeller and wing"
         )
-
-
-def _robust(residual: FloatArray) -> FloatArray:
-    """Residual whose square is twice the pseudo-Huber loss."""
-    scaled = (residual / ROBUST_FROM) ** 2
-    return np.asarray(
-        np.sign(residual) * ROBUST_FROM * np.sqrt(2.0 * scaled / (np.sqrt(1.0 + scaled) + 1.0))
-    )
-
-
-def _robust_slope(residual: FloatArray) -> FloatArray:
-    """Derivative of `_robust`."""
-    scaled = (residual / ROBUST_FROM) ** 2
-    root = np.sqrt(1.0 + scaled)
-    return np.asarray(np.sqrt(0.5 * (root + 1.0)) / root)
-
-
-def _slopes(
-    subject: Subject, evidence: Evidence, *, values: FloatArray, step: FloatArray
-) -> FloatArray:
-    """Derivatives of what the model says by each parameter, shape (rows, 3, p)."""
-    shift = np.diag(step)
-    both = predict_continued(
-        subject, evidence, values=np.concatenate([values + shift, values - shift])
-    )
-    count = len(values)
-    change = (both[:count] - both[count:]) / (2.0 * step[:, None, None])
-    return np.nan_to_num(np.moveaxis(change, 0, -1))
 
 
 def _described(
@@ -256,7 +178,7 @@ def _described(
     known = ~np.isnan(residual)
     plain = np.where(known, residual / expected, 0.0)
     weight = np.where(known, (1.0 + (plain / ROBUST_FROM) ** 2) ** -0.5, 0.0)
-    slope = _slopes(subject, evidence, values=values, step=step) / expected[..., None]
+    slope = slopes(subject, evidence, values=values, step=step) / expected[..., None]
     weighted = slope * np.sqrt(weight)[..., None]
     information = np.einsum("nqi,nqj->ij", weighted, weighted)
     inverse_spread = np.linalg.inv(spread)
@@ -301,7 +223,7 @@ def _symmetric(matrix: FloatArray) -> FloatArray:
 
 def _excess(plain: FloatArray, known: npt.NDArray[np.bool_]) -> float:
     """Variance seen over variance assumed, not below 1, steadied by what was assumed."""
-    bent = _robust(plain[known])
+    bent = robust(plain[known])
     return max(1.0, float((SCATTER_WEIGHT + bent @ bent) / (SCATTER_WEIGHT + bent.size)))
 
 
@@ -317,6 +239,6 @@ def _scatter(residual: FloatArray, evidence: Evidence, expected: FloatArray) -> 
     )
     default = np.nanmax(standard_deviations(evidence) ** 2, axis=0)
     assumed = np.where(np.isnan(assumed), default, assumed)
-    bent = np.where(known, _robust(np.where(known, residual / expected, 0.0)), 0.0) * expected
+    bent = np.where(known, robust(np.where(known, residual / expected, 0.0)), 0.0) * expected
     seen = np.sum(bent**2, axis=0)
     return np.asarray(np.sqrt((SCATTER_WEIGHT * assumed + seen) / (SCATTER_WEIGHT + count)))

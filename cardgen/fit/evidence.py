@@ -114,16 +114,20 @@ class Reading:
     ----------
     file, column : str
         Where they stand, for messages [-]
+    line, place : int
+        Line and column of the header's cell, counted from 1 [-]
     quantity : str
         Name of the column without its unit [-]
     unit : Unit
         Unit that the column says its numbers are in [-]
     rows : ndarray of bool
-        Mask of the rows of the evidence [-]
+        Mask of the rows of the evidence that have a number there [-]
     """
 
     file: str
     column: str
+    line: int
+    place: int
     quantity: str
     unit: Unit
     rows: npt.NDArray[np.bool_]

@@ -115,6 +115,36 @@ def predict_continued(subject: Subject, evidence: Evidence, *, values: FloatArra
     return predicted
 
 
+def slopes(
+    subject: Subject, evidence: Evidence, *, values: FloatArray, step: FloatArray
+) -> FloatArray:
+    """Derivatives of what the model says by each parameter.
+
+    Parameters
+    ----------
+    subject : Subject
+        What is fitted [-]
+    evidence : Evidence
+        The rows, n of them [-]
+    values : ndarray, shape (p,)
+        Parameters [-]
+    step : ndarray, shape (p,)
+        Half the distance of the central differences [-]
+
+    Returns
+    -------
+    ndarray, shape (n, 3, p)
+        0 where the model has no answer [SI]
+    """
+    shift = np.diag(step)
+    both = predict_continued(
+        subject, evidence, values=np.concatenate([values + shift, values - shift])
+    )
+    count = len(values)
+    change = (both[:count] - both[count:]) / (2.0 * step[:, None, None])
+    return np.nan_to_num(np.moveaxis(change, 0, -1))
+
+
 def _asked(mixtures: Sequence[Mixture], evidence: Evidence) -> tuple[Condition, Setting]:
     """Where rows were flown, and what was asked there."""
     setting = Setting(

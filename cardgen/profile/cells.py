@@ -43,11 +43,15 @@ class Column:
         What it holds, its unit taken off [-]
     unit : Unit, optional
         Unit of its numbers; None for words and for rpm [-]
+    line, place : int
+        Line and column of its name in the file, counted from 1 [-]
     """
 
     name: str
     quantity: str
     unit: Unit | None
+    line: int
+    place: int
 
 
 @dataclass(slots=True)
@@ -303,7 +307,7 @@ def _column(
     if name in known:
         dimensions = known[name]
         if not dimensions:
-            return Column(cell.text, name, None)
+            return Column(cell.text, name, None, line, cell.column)
         sheet.report(
             line, cell.column, cell.text, "has no unit", f"a name such as {_example(name, known)}"
         )
@@ -312,9 +316,10 @@ def _column(
     if unit is not None and known.get(stem):
         for dimension in known[stem] or ():
             try:
-                return Column(cell.text, stem, split_suffix(name, dimension=dimension)[1])
+                right = split_suffix(name, dimension=dimension)[1]
             except QuantityError:
                 continue
+            return Column(cell.text, stem, right, line, cell.column)
         sheet.report(
             line,
             cell.column,

@@ -28,7 +28,7 @@ from cardgen.errors import DataError, Problem
 from cardgen.fit import Evidence, Reading, cruise_of_rows, prior_mean
 from cardgen.limits.gauges import true_manifold_pressure, true_rpm
 from cardgen.profile.assembly import subject_of
-from cardgen.profile.cells import Column, Row, Sheet, read_sheet
+from cardgen.profile.cells import Row, Sheet, read_sheet
 from cardgen.profile.document import Profile
 from cardgen.profile.parsing import MOST_PROBLEMS
 from cardgen.profile.values import shown as shown_value
@@ -40,6 +40,7 @@ _ALTITUDES: Final = ("pressure_altitude", "density_altitude")
 _POWERS: Final = ("percent_power", "power")
 _TEMPERATURES: Final = ("oat", "isa_deviation")
 _READ: Final = ("map", "fuel_flow", "tas")
+_SCALED: Final = (*_READ, "oat", "isa_deviation", "power", "leg1_gs")
 
 COLUMNS: Final[Mapping[str, tuple[Dimension, ...]]] = {
     "pressure_altitude": ("length",),
@@ -120,6 +121,7 @@ class _Entry:
     read: list[float] = field(default_factory=lambda: [np.nan] * 3)
     rounding: list[float] = field(default_factory=lambda: [0.0] * 3)
     airspeed_spread: float = 0.0
+    filled: frozenset[str] = frozenset()
     digest: str = ""
 
 
@@ -238,6 +240,7 @@ def _entry(profile: Profile, row: Row, file: int, assumed: dict[str, None]) -> _
         read=read,
         rounding=rounding,
         airspeed_spread=spread,
+        filled=frozenset(row.filled),
     )
     numbers = (pressure, temperature, rpm, mass, entry.power, *read)
     words = ",".join(f"{number:.9g}" for number in numbers)
@@ -455,11 +458,28 @@ def _corrected(profile: Profile, entries: Sequence[_Entry]) -> Evidence:
 def _readings(sheets: Sequence[Sheet], entries: Sequence[_Entry]) -> Iterator[Reading]:
     """Yield the runs of rows that share a column and a source."""
     for place, sheet in enumerate(sheets):
-        columns: list[Column] = [column for column in sheet.columns if column and column.unit]
-        for flight in (False, True):
-            rows = np.array([e.file == place and e.flight == flight for e in entries])
-            if not rows.any():
+        for column in sheet.columns:
+            # Of ground legs the first stands for all: their speeds scale together.
+            if (
+                column is None
+                or column.unit is None
+                or column.quantity not in (*_SCALED, "leg1_gs")
+            ):
                 continue
-            for column in columns:
-                if column.quantity in COLUMNS and column.unit is not None:
-                    yield Reading(sheet.shown, column.name, column.quantity, column.unit, rows)
+            for flight in (False, True):
+                rows = np.array(
+                    [
+                        e.file == place and e.flight == flight and column.quantity in e.filled
+                        for e in entries
+                    ]
+                )
+                if rows.any():
+                    yield Reading(
+                        file=sheet.shown,
+                        column=column.name,
+                        line=column.line,
+                        place=column.place,
+                        quantity=column.quantity,
+                        unit=column.unit,
+                        rows=rows,
+                    )
