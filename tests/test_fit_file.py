@@ -11,7 +11,9 @@ import numpy as np
 import pytest
 
 from cardgen.errors import DataError
+from cardgen.fit import estimate
 from cardgen.profile import load_profile
+from cardgen.profile.assembly import subject_of
 from cardgen.profile.fit_file import fit_path, fit_text, learned_for, read_fit
 from cardgen.profile.fitting import fit_points, record_of, start_of
 from cardgen.profile.points import read_points
@@ -42,12 +44,17 @@ def tree(tmp_path: Path) -> Path:
     return aircraft
 
 
+def written(aircraft: Path, rows: str, name: str) -> Path:
+    """Write a points file beside an aircraft."""
+    file = aircraft.with_name(name)
+    file.write_text(rows)
+    return file
+
+
 def fit(aircraft: Path, rows: str, name: str = "rows.csv") -> Path:
     """Fit an aircraft to rows and write its fit file."""
     profile = load_profile(aircraft)
-    file = aircraft.with_name(name)
-    file.write_text(rows)
-    points = read_points(profile, [file])
+    points = read_points(profile, [written(aircraft, rows, name)])
     target = fit_path(profile)
     start = start_of(profile, points, record=read_fit(target, profile) if target.exists() else None)
     found = fit_points(profile, points, start)
@@ -165,18 +172,57 @@ def test_flights_after_a_change_are_fitted_on_top_of_what_is_still_true(tree: Pa
 
 
 def test_a_second_run_on_the_same_flights_counts_them_once(tree: Path) -> None:
-    """Fitting again gives the same file, whether or not an earlier fit went before."""
+    """Fitting again what was fitted after a change gives the same parameters."""
     fit(tree, ROWS)
-    once = fit(tree, MORE, "flights.csv").read_text()
-    assert fit(tree, MORE, "flights.csv").read_text() == once
-    # All rows together tell what one after the other told, but for the curvature of the model.
-    stepwise = read_fit(fit_path(load_profile(tree)), load_profile(tree)).knowledge
+    exchange(tree, "specimen-p2-77.yaml", "specimen-p3-75.yaml")
+    once = read_fit(fit(tree, MORE, "flights.csv"), load_profile(tree))
+    twice = read_fit(fit(tree, MORE, "flights.csv"), load_profile(tree))
+    assert np.array_equal(once.knowledge.values, twice.knowledge.values)
+    assert twice.earlier is not None
+    assert len(twice.earlier.rows) == 5
+
+
+def test_rows_that_were_corrected_leave_nothing_behind(tree: Path) -> None:
+    """What was fitted to a mistake must not linger as the prior of the next fit."""
+    fit(tree, ROWS.replace("22.6", "26.6"))
+    record = read_fit(fit(tree, ROWS), load_profile(tree))
     fit_path(load_profile(tree)).unlink()
+    fresh = read_fit(fit(tree, ROWS), load_profile(tree))
+    assert np.array_equal(record.knowledge.values, fresh.knowledge.values)
+    assert record.earlier is None
+
+
+def test_other_evidence_replaces_the_earlier_and_says_so(tree: Path) -> None:
+    """Without a change of parts, what is to count must be given."""
+    fit(tree, ROWS)
     profile = load_profile(tree)
-    points = read_points(profile, [tree.with_name("rows.csv"), tree.with_name("flights.csv")])
-    together = fit_points(profile, points, start_of(profile, points, record=None))
-    apart = (stepwise.values - together.values) / np.sqrt(np.diag(together.covariance))
-    assert np.abs(apart).max() < 0.5
+    points = read_points(profile, [written(tree, MORE, "flights.csv")])
+    start = start_of(profile, points, record=read_fit(fit_path(profile), profile))
+    assert start.earlier is None
+    assert "5 rows that are not given here" in start.notes[0]
+
+
+def test_the_old_handbook_is_not_taken_for_the_new_propeller_in_silence(tree: Path) -> None:
+    """A corrected data sheet and a replaced part look the same; the user must hear of both."""
+    fit(tree, ROWS)
+    exchange(tree, "specimen-p2-77.yaml", "specimen-p3-75.yaml")
+    profile = load_profile(tree)
+    points = read_points(profile, [tree.with_name("rows.csv")])
+    start = start_of(profile, points, record=read_fit(fit_path(profile), profile))
+    assert start.earlier is None
+    assert "evidence is of the old one" in start.notes[0]
+
+
+def test_one_fit_after_the_other_tells_what_both_tell_together(tree: Path) -> None:
+    """A posterior taken as the next prior is Bayes' rule, but for the curvature of the model."""
+    profile = load_profile(tree)
+    subject = subject_of(profile)
+    rows = [written(tree, text, f"{place}.csv") for place, text in enumerate((ROWS, MORE))]
+    first, second = (read_points(profile, [file]).evidence for file in rows)
+    one = estimate(subject, first)
+    two = estimate(subject, second, mean=one.values, covariance=one.covariance)
+    both = estimate(subject, read_points(profile, rows).evidence)
+    assert np.abs((two.values - both.values) / both.standard_error).max() < 0.5
 
 
 def test_a_fit_of_other_equations_is_not_used(tree: Path) -> None:

@@ -51,14 +51,11 @@ class Earlier:
         Their covariance [-]
     rows : tuple of str
         Digests of its rows [-]
-    covers : EvidenceRange, optional
-        Ranges of its rows, where they were of the aircraft as it is [-]
     """
 
     values: FloatArray
     covariance: FloatArray
     rows: tuple[str, ...]
-    covers: EvidenceRange | None
 
 
 @dataclass(frozen=True, slots=True)
@@ -443,8 +440,7 @@ def _earlier(file: ProfileFile[Any], section: EarlierSection, size: int) -> Earl
     covariance = _covariance(file, section.covariance, size, at=("earlier", "covariance"))
     if covariance is None:
         return None
-    covers = None if section.covers is None else _range(section.covers)
-    return Earlier(np.array(section.values), covariance, tuple(section.rows), covers)
+    return Earlier(np.array(section.values), covariance, tuple(section.rows))
 
 
 def _range(section: CoversSection) -> EvidenceRange:
@@ -512,8 +508,6 @@ def fit_text(record: FitRecord) -> str:
     lines += [f"  - {_word(warning[:600])}" for warning in record.warnings]
     if record.earlier is not None:
         lines += ["earlier:", f"  rows: {_words(record.earlier.rows)}"]
-        if record.earlier.covers is not None:
-            lines += ["  covers:", *_ranges(record.earlier.covers, indent="    ")]
         lines += [f"  values: {_numbers(record.earlier.values)}", "  covariance:"]
         lines += _matrix(record.earlier.covariance, indent="    ")
     return "\n".join(lines) + "\n"

@@ -94,9 +94,6 @@ class EarlierSection(Section):
     """What an earlier fit, whose rows were not given again, had told before."""
 
     rows: list[Digest] = Field(max_length=MOST_ROWS, description="Digest of every row of it")
-    covers: CoversSection | None = Field(
-        None, description="Ranges of its rows, where they were of the aircraft as it is"
-    )
     values: Row = Field(description="Parameters, in the order of `parameters`")
     covariance: Matrix = Field(description="Covariance of them")
 

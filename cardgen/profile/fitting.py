@@ -2,15 +2,14 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
+from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
 from cardgen.fit import (
     Estimate,
-    EvidenceRange,
-    Knowledge,
     carried_over,
     estimate,
     knowledge_from_fit,
@@ -23,6 +22,7 @@ from cardgen.profile.document import Profile
 from cardgen.profile.fit_file import (
     Earlier,
     FitRecord,
+    Match,
     match,
     mixture_digests,
     part_digests,
@@ -73,9 +73,11 @@ def start_of(profile: Profile, points: Points, *, record: FitRecord | None) -> S
 
     Notes
     -----
-    No row counts twice. Where rows of the standing fit are given again, everything starts from
-    what that fit started from; where none is, its result is the prior, with the parameters of
-    parts that were replaced since back at what their data sheets say.
+    After a part was replaced, and where none of the evidence of the standing fit is given again,
+    that fit is the prior, with the parameters of the replaced part back at what its data sheet
+    says. As long as nothing more is replaced every new fit starts from the same. In all other
+    cases the points given are all there is: an earlier fit to rows that were corrected since, or
+    to the same ones, must not count beside them.
     """
     subject = subject_of(profile)
     mean = prior_mean(subject.aircraft, subject.mixtures)
@@ -86,40 +88,41 @@ def start_of(profile: Profile, points: Points, *, record: FitRecord | None) -> S
     given = set(points.row_digests)
     before = set(record.earlier.rows) if record.earlier else set()
     found = match(profile, record)
-    if not given & (set(record.rows) | before):
-        if not found.unchanged and not found.mixtures:
-            return alone
-        kept = carried_over(
-            subject, record.knowledge, unchanged=found.unchanged, mixtures=found.mixtures
-        )
-        rows = (*(record.earlier.rows if record.earlier else ()), *record.rows)
-        covers = None if found.replaced else record.knowledge.covers
-        words = f"Starts from an earlier fit to {len(rows)} rows, not given here."
-        changed = (
-            f" Replaced since: {', '.join(found.replaced)}; back at data-sheet values."
-            if found.replaced
-            else ""
-        )
-        return Start(
-            kept.values,
-            kept.covariance,
-            Earlier(kept.values, kept.covariance, rows, covers),
-            (words + changed,),
-        )
-    notes = []
+    again = given & (set(record.rows) | before) or set(points.files) & set(record.files)
     if found.replaced:
-        notes.append(
-            f"{' and '.join(found.replaced)} changed in the profile since rows given here were "
-            "fitted. If a part was replaced, those rows are of the old one: fit only flights made "
-            "since, the earlier fit tells the rest."
-        )
-    elif record.earlier is not None and not given & before:
-        notes.append(f"Starts from an earlier fit to {len(before)} rows, not given here.")
-        return Start(record.earlier.values, record.earlier.covariance, record.earlier, tuple(notes))
+        changed = " and ".join(found.replaced)
+        if again:
+            note = (
+                f"{changed} changed in the profile since evidence given here was fitted. If it was "
+                "replaced, that evidence is of the old one: fit only flights made since, and the "
+                "earlier fit tells the rest."
+            )
+            return Start(mean, covariance, None, (note,))
+        return _carried(profile, record, found, changed)
+    if record.earlier is not None and not given & before:
+        note = _STARTS.format(len(before))
+        return Start(record.earlier.values, record.earlier.covariance, record.earlier, (note,))
     left = len((set(record.rows) | before) - given)
-    if left:
-        notes.append(f"{left} rows of the earlier fit are not given here and no longer count.")
-    return Start(mean, covariance, None, tuple(notes))
+    if left and not set(points.files) & set(record.files):
+        note = (
+            f"The standing fit was to {left} rows that are not given here and no longer count; "
+            "give their files as well if they are of this aircraft as it is."
+        )
+        return Start(mean, covariance, None, (note,))
+    return alone
+
+
+def _carried(profile: Profile, record: FitRecord, found: Match, changed: str) -> Start:
+    """Return what a fit still says after parts were replaced."""
+    kept = carried_over(
+        subject_of(profile), record.knowledge, unchanged=found.unchanged, mixtures=found.mixtures
+    )
+    rows = (*(record.earlier.rows if record.earlier else ()), *record.rows)
+    note = _STARTS.format(len(rows)) + f" Replaced since: {changed}; back at data-sheet values."
+    return Start(kept.values, kept.covariance, Earlier(kept.values, kept.covariance, rows), (note,))
+
+
+_STARTS: Final = "Starts from an earlier fit to {} rows, not given here."
 
 
 def fit_points(profile: Profile, points: Points, start: Start) -> Estimate:
@@ -174,7 +177,7 @@ def record_of(
     """
     return FitRecord(
         aircraft=profile.name,
-        knowledge=knowledge_of(profile, points, start, found=found),
+        knowledge=knowledge_from_fit(subject_of(profile), points.evidence, found),
         prior=found.prior,
         prior_deviation=found.prior_deviation,
         parts=part_digests(profile),
@@ -187,39 +190,3 @@ def record_of(
         warnings=warnings,
         earlier=start.earlier,
     )
-
-
-def knowledge_of(profile: Profile, points: Points, start: Start, *, found: Estimate) -> Knowledge:
-    """Return what is known after a fit.
-
-    Parameters
-    ----------
-    profile : Profile
-        The aircraft [-]
-    points : Points
-        Its evidence [-]
-    start : Start
-        What was known before [-]
-    found : Estimate
-        What was found [-]
-
-    Returns
-    -------
-    Knowledge
-        With the ranges of an earlier fit added, where that was of the same parts [-]
-    """
-    knowledge = knowledge_from_fit(subject_of(profile), points.evidence, found)
-    before = start.earlier.covers if start.earlier else None
-    if before is None or knowledge.covers is None:
-        return knowledge
-    return replace(knowledge, covers=_both(before, knowledge.covers))
-
-
-def _both(one: EvidenceRange, other: EvidenceRange) -> EvidenceRange:
-    """Return the ranges that hold two."""
-
-    def ends(name: str) -> tuple[float, float]:
-        (low, high), (least, greatest) = getattr(one, name), getattr(other, name)
-        return min(low, least), max(high, greatest)
-
-    return EvidenceRange(ends("pressure"), ends("temperature"), ends("rpm"), ends("power"))
