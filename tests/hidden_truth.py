@@ -39,9 +39,9 @@ class Truth:
     temperature_exponent: float = 0.58
     induction_loss: float = 2300.0  # at rated air flow in standard air [Pa]
     ram: float = 0.62
-    zero_lift_drag: float = 0.0236
-    lift_of_least_drag: float = 0.18
-    span_efficiency: float = 0.73
+    zero_lift_drag: float = 0.0226
+    lift_of_least_drag: float = 0.08
+    span_efficiency: float = 0.70
     body_factor: float = 0.94
     diameter: float = 77.0 * INCH
     blades: int = 2
@@ -160,11 +160,14 @@ def stations(truth: Truth) -> tuple[tuple[float, float, float, float, float], ..
 
 
 def section(incidence: float, thickness: float, mach: float) -> tuple[float, float]:
-    """Lift and drag coefficient of a cambered section."""
+    """Lift and drag coefficient of a cambered section.
+
+    With it the blade form 5868-9 is within 0.015 of the efficiency of NACA TR 640 in cruise.
+    """
     stiff = math.sqrt(1.0 - min(mach, 0.85) ** 2)
     lift = 5.9 * (1.0 - 0.6 * max(thickness - 0.12, 0.0)) * (incidence + 0.068) / stiff
     lift = max(-0.8, min(lift, 1.35))
-    drag = 0.0075 + 0.02 * thickness**2 + 0.009 * (lift - 0.45) ** 2
+    drag = 0.012 + 0.02 * thickness**2 + 0.009 * (lift - 0.45) ** 2
     critical = 0.90 - thickness - 0.08 * abs(lift)
     return lift, drag + 9.0 * max(mach - critical, 0.0) ** 2
 
