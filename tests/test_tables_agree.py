@@ -13,6 +13,7 @@ from cardgen.airspeed import indicated_temperature
 from cardgen.atmosphere import density_altitude, standard_pressure, standard_temperature
 from cardgen.constants import FOOT
 from cardgen.cruise import CruiseStatus
+from cardgen.limits.gauges import true_rpm
 from cardgen.profile import load_profile
 from cardgen.profile.assembly import model_of
 from cardgen.profile.document import Profile
@@ -21,6 +22,7 @@ from cardgen.tables.choices import UnitSet
 from cardgen.tables.compose import Words, compose
 from cardgen.tables.rows import COLUMNS, Combinations, rows, situation_of
 from cardgen.tables.solution import Model, Situation, solve, true_temperature_of
+from cardgen.tables.verdict import settled_rpm
 from cardgen.units import from_unit
 
 PROFILES = Path(__file__).parents[1] / "profiles" / "aircraft"
@@ -211,3 +213,21 @@ def test_true_temperature_is_the_reading_less_the_rise_it_flies_with(model: Mode
     recovery = model.gauges.temperature_recovery
     again = indicated_temperature(true, speed.point.true_airspeed, recovery_factor=recovery)
     np.testing.assert_allclose(again, read.temperature, rtol=0.0, atol=1e-6)
+
+
+@pytest.mark.parametrize("humidity", [0.0, 1.0])
+def test_rpm_on_a_stop_hardly_differs_where_the_stop_hardly_holds(
+    model: Model, humidity: float
+) -> None:
+    """A stop a hair beyond the governed blade angle lets rpm sag by a hair, in humid air too."""
+    situation = Situation(np.array(1500.0), np.array(305.0), np.array(1270.0), 0)
+    asked = {"indicated_rpm": np.array(2400.0), "power_fraction": 0.65, "with_tolerance": False}
+    humid = replace(model, relative_humidity=humidity)
+    angle = float(solve(humid, situation, **asked).point.blade_angle)
+    aircraft = model.subject.aircraft
+    for stop in ({"fine_stop": angle + 1e-5}, {"coarse_stop": angle - 1e-5}):
+        propeller = replace(aircraft.propeller, **stop)
+        subject = replace(model.subject, aircraft=replace(aircraft, propeller=propeller))
+        held = replace(humid, subject=subject)
+        settled = settled_rpm(held, solve(held, situation, **asked))
+        assert settled == pytest.approx(float(true_rpm(model.gauges, 2400.0)), abs=1.0)

@@ -62,6 +62,7 @@ def ungoverned_rpm(
     true_airspeed: ArrayLike,
     density: ArrayLike,
     speed_of_sound: ArrayLike,
+    rpm_range: tuple[float, float] = (0.0, np.inf),
 ) -> FloatArray:
     """Propeller speed to which a fixed blade angle lets the engine settle.
 
@@ -80,12 +81,14 @@ def ungoverned_rpm(
         Air density [kg/m^3]
     speed_of_sound : array_like
         Speed of sound [m/s]
+    rpm_range : tuple of float
+        Propeller speeds for which `power` has an answer [rpm]
 
     Returns
     -------
     ndarray
         Propeller speed at which power given and absorbed agree; NaN where there is none inside
-        the propeller's table [rpm]
+        the propeller's table and `rpm_range` [rpm]
 
     Notes
     -----
@@ -116,6 +119,7 @@ def ungoverned_rpm(
         slowest = 60.0 * speed / (greatest_j * diameter)
     lower = np.maximum(slowest, LEAST_TIP_MACH * per_mach)
     upper = np.minimum(60.0 * speed / (least_j * diameter), GREATEST_TIP_MACH * per_mach)
+    lower, upper = np.maximum(lower, rpm_range[0]), np.minimum(upper, rpm_range[1])
     empty = ~(lower < upper)
     lower, upper = lower * (1.0 + _INSIDE), upper * (1.0 - _INSIDE)
     rpm = find_root(surplus, lower, upper, tolerance=1e-6)

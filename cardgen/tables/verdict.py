@@ -7,10 +7,17 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
-from cardgen.atmosphere import density, pressure_altitude, speed_of_sound, standard_pressure
+from cardgen.atmosphere import (
+    density,
+    pressure_altitude,
+    speed_of_sound,
+    standard_pressure,
+    vapour_pressure,
+)
 from cardgen.constants import FOOT
 from cardgen.cruise import CruiseStatus
 from cardgen.engine import brake_power, power_line
+from cardgen.engine.model import RPM_RANGE
 from cardgen.limits import Evidence, Findings, Flown, MessageUnits, Verdict, check
 from cardgen.propeller import ungoverned_rpm
 from cardgen.tables.solution import Model, Solution
@@ -128,6 +135,7 @@ def settled_rpm(model: Model, solution: Solution) -> FloatArray:
     point = solution.point
     settled = np.full(point.power.shape, np.nan)
     aircraft, mixtures = model.fitted()
+    least, greatest = (share * aircraft.engine.rated_rpm for share in RPM_RANGE)
     for status, stop in (
         (CruiseStatus.FINE_STOP, aircraft.propeller.fine_stop),
         (CruiseStatus.COARSE_STOP, aircraft.propeller.coarse_stop),
@@ -140,13 +148,16 @@ def settled_rpm(model: Model, solution: Solution) -> FloatArray:
             held
         ]
         temperature = np.broadcast_to(np.asarray(solution.situation.temperature), shape)[held]
+        vapour = vapour_pressure(model.relative_humidity, temperature)
         setting = point.manifold_pressure[held]
         gear = aircraft.engine.gear_ratio
 
         def power(
             propeller_rpm: FloatArray,
+            *,
             pressure: FloatArray = pressure,
             temperature: FloatArray = temperature,
+            vapour: FloatArray = vapour,
             setting: FloatArray = setting,
             gear: float = gear,
         ) -> FloatArray:
@@ -156,6 +167,7 @@ def settled_rpm(model: Model, solution: Solution) -> FloatArray:
                 mixture=mixtures[solution.situation.mixture],
                 pressure=pressure,
                 temperature=temperature,
+                vapour_pressure=vapour,
             )
             return brake_power(line, setting)
 
@@ -165,8 +177,9 @@ def settled_rpm(model: Model, solution: Solution) -> FloatArray:
                 power,
                 blade_angle=stop,
                 true_airspeed=point.true_airspeed[held],
-                density=density(pressure, temperature),
+                density=density(pressure, temperature, vapour_pressure=vapour),
                 speed_of_sound=speed_of_sound(temperature),
+                rpm_range=(least * gear, greatest * gear),
             )
             / gear
         )
