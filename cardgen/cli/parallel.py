@@ -21,8 +21,6 @@ Result = TypeVar("Result")
 _WORTH_STARTING: Final = 4
 """Jobs from which processes are worth their start: one job takes about as long as starting."""
 
-_JOBS_PER_PROCESS: Final = 100  # then a fresh one takes over, so that memory cannot creep up
-
 
 def cores() -> int:
     """Return how many cores this process may use."""
@@ -65,12 +63,7 @@ def spread(
     context = multiprocessing.get_context(method)
     if method == "forkserver":
         context.set_forkserver_preload(list(preload))
-    pool = ProcessPoolExecutor(
-        processes,
-        mp_context=context,
-        initializer=_begin,
-        max_tasks_per_child=_JOBS_PER_PROCESS,
-    )
+    pool = ProcessPoolExecutor(processes, mp_context=context, initializer=_begin)
     try:
         with _undisturbed():  # the first job starts the processes
             answers = pool.map(work, jobs)

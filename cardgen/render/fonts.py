@@ -9,7 +9,7 @@ from __future__ import annotations
 import re
 import struct
 from dataclasses import dataclass
-from functools import cache
+from functools import cache, lru_cache
 from pathlib import Path
 from typing import Final, Literal
 
@@ -35,6 +35,9 @@ _PAIRS: Final = re.compile(
     r"|lb|kg|hp|kW|min|h|CAS|gal/h|L/h|lb/h|kg/h)(?![\w/])))"
     r"|(?<=section) (?=\S)|(?<=revision) (?=\S)|(?<=note) (?=[0-9])|(?<=page) (?=[0-9])"
 )
+
+_REMEMBERED: Final = 2048
+"""Texts whose width is remembered: more than one card has, few enough for a run of hundreds."""
 
 SUBSTITUTES: Final[dict[str, str]] = {
     "\t": " ",
@@ -140,7 +143,7 @@ def _segments(data: bytes, at: int) -> dict[int, int]:
     return glyphs
 
 
-@cache
+@lru_cache(_REMEMBERED)
 def printable(text: str) -> str:
     """Return the text with every letter that the faces lack replaced.
 
@@ -168,7 +171,7 @@ def _common_letters() -> frozenset[int]:
     return frozenset(metrics("regular").advance.keys() & metrics("bold").advance.keys())
 
 
-@cache
+@lru_cache(_REMEMBERED)
 def width(text: str, face: Face, size: float) -> float:
     """Return how wide a text runs.
 
@@ -190,7 +193,7 @@ def width(text: str, face: Face, size: float) -> float:
     return size * sum(advance[ord(letter)] for letter in text)
 
 
-@cache
+@lru_cache(_REMEMBERED)
 def wrap(text: str, face: Face, *, size: float, measure: float) -> tuple[str, ...]:
     """Return the text broken into lines no wider than the measure.
 
