@@ -8,11 +8,13 @@ from dataclasses import dataclass
 from typing import Literal
 
 import numpy as np
+from back_factory import make_back
 
 from cardgen.limits.kinds import Source
 from cardgen.profile.document import Identity, PartIdentity
+from cardgen.tables.back import NOTHING_BESIDE
 from cardgen.tables.card import Card, CardTable, CellState, Decimals, Reason, Section
-from cardgen.tables.choices import CardChoices, UnitSet
+from cardgen.tables.choices import CardChoices, SecondUnits, UnitSet
 
 METRIC = UnitSet("hPa", "l/h", "km/h", "degC", "m", "kg")
 
@@ -64,6 +66,8 @@ class Sketch:
     fitted: bool = True
     stamps: bool = True
     seed: int = 1
+    back: bool = False  # listings and charts as well
+    second: bool = False  # a second unit of pressure and fuel flow
 
 
 REASON_TEXT = (
@@ -106,6 +110,8 @@ def make_card(sketch: Sketch = Sketch()) -> Card:
         )
         for k in range(sketch.tables)
     )
+    metric_second = SecondUnits("inHg", "gal/h", None)
+    second = metric_second if sketch.metric else SecondUnits("hPa", "l/h", "km/h")
     choices = CardChoices(
         rpm=rpm,
         power_fraction=powers[:2],
@@ -115,7 +121,11 @@ def make_card(sketch: Sketch = Sketch()) -> Card:
         mass=(1100.0,),
         mixtures=("Best power", "Lean of peak"),
         units=units,
+        second_units=second if sketch.second else SecondUnits(),
     )
+    back = NOTHING_BESIDE
+    if sketch.back:
+        back = make_back(choices, tables, reasons=sketch.reasons, seed=sketch.seed)
     stamps: tuple[str, ...] = ()
     if sketch.stamps:
         stamps = ("DEMONSTRATION DATA, NOT FOR FLIGHT",)
@@ -152,6 +162,7 @@ def make_card(sketch: Sketch = Sketch()) -> Card:
                 ),
             ),
         ),
+        back=back,
     )
 
 

@@ -6,15 +6,17 @@ cockpit documents, no single source.
 
 from __future__ import annotations
 
+from io import BytesIO
 from itertools import pairwise
 
 import pytest
 from card_factory import Sketch
+from pypdf import PdfReader
 from test_render_pdf import RANDOM_CARDS, edition_of, pdf_of, random_sketch
 
 from cardgen.render.edition import Edition
 from cardgen.render.fonts import Face, width
-from cardgen.render.paper import PAPERS, find_paper
+from cardgen.render.paper import FOLD, PAPERS, find_paper
 from cardgen.render.wording import SUPPLEMENTARY, cell_texts
 from cardgen.render.words import Word, read_words
 from cardgen.tables.card import CellState
@@ -89,21 +91,31 @@ def check_no_overlap(page: tuple[Word, ...]) -> None:
             assert apart, (one, other)
 
 
-def check_margins(pages: tuple[tuple[Word, ...], ...], name: str) -> None:
+def check_margins(pdf: bytes, pages: tuple[tuple[Word, ...], ...], name: str) -> None:
     paper = find_paper(name)
+    sheets = [
+        (float(sheet.mediabox.width), float(sheet.mediabox.height))
+        for sheet in PdfReader(BytesIO(pdf)).pages
+    ]
     for index, page in enumerate(pages):
-        start = 0.0
+        start, (wide, high) = 0.0, (paper.width, paper.height)
         if paper.sheet is not None:
             middle = 0.5 * paper.sheet[0]
             start = middle if index % 2 else middle - paper.width
-        front = index % 2 == 0
-        left_margin = paper.binder if front else paper.margin
-        right_margin = paper.margin if front else paper.binder
+        broad = paper.sheet is None and sheets[index][0] > sheets[index][1]
+        if broad:
+            wide, high = high, wide
+        sides = (paper.margin, paper.margin) if broad else (paper.binder, paper.margin)
+        left_margin, right_margin = sides if index % 2 == 0 else reversed(sides)
+        ends = paper.binder if broad else paper.margin
         for word in page:
+            if word.text == FOLD:  # beside the mark, outside both pages
+                assert right(word) < middle
+                continue
             assert word.x >= start + left_margin - ROUNDING, word
-            assert right(word) <= start + paper.width - right_margin + ROUNDING, word
-            assert word.y - DEPTH * word.size >= paper.margin - ROUNDING, word
-            assert word.y + FIGURE_HEIGHT * word.size <= paper.height - paper.margin + ROUNDING
+            assert right(word) <= start + wide - right_margin + ROUNDING, word
+            assert word.y - DEPTH * word.size >= ends - ROUNDING, word
+            assert word.y + FIGURE_HEIGHT * word.size <= high - ends + ROUNDING
 
 
 def check_marking(edition: Edition, pages: tuple[tuple[Word, ...], ...]) -> None:
@@ -124,9 +136,10 @@ def check_marking(edition: Edition, pages: tuple[tuple[Word, ...], ...]) -> None
 
 
 def check_card(edition: Edition, paper: str) -> None:
-    pages = pages_of(edition, paper)
+    pdf = pdf_of(edition, paper=paper)
+    pages = read_words(pdf)
     check_sizes(edition, pages)
-    check_margins(pages, paper)
+    check_margins(pdf, pages, paper)
     check_marking(edition, pages)
     for page in pages:
         check_gaps(page)

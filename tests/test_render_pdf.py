@@ -35,6 +35,7 @@ RANDOM_CARDS = int(os.environ.get("CARDGEN_RANDOM_CARDS", "12"))
 
 def random_sketch(seed: int) -> Sketch:
     rng = random.Random(seed)
+    long = rng.random() < 0.5
     return Sketch(
         altitudes=rng.randint(1, 12),
         rpm=rng.randint(1, 6),
@@ -43,10 +44,12 @@ def random_sketch(seed: int) -> Sketch:
         tables=rng.randint(1, 4),
         reasons=rng.randint(0, 4),
         metric=rng.random() < 0.5,
-        long=rng.random() < 0.5,
+        long=long,
         fitted=rng.random() < 0.5,
         stamps=rng.random() < 0.5,
         seed=seed,
+        back=rng.random() < 0.7,
+        second=not long and rng.random() < 0.5,
     )
 
 

@@ -11,7 +11,7 @@ from cardgen.errors import ReleaseError
 from cardgen.render.beside import Cell, Listing, listings
 from cardgen.render.expectation import is_same
 from cardgen.render.fonts import CAP_HEIGHT, Face, printable, width
-from cardgen.render.wording import number
+from cardgen.render.wording import left_out_text, number
 from cardgen.render.words import Word
 from cardgen.tables.back import Axis, Chart, Panel
 from cardgen.tables.card import Card, CellState
@@ -141,8 +141,13 @@ class Beside:
                 states |= {(CellState.FORBIDDEN, area.reason) for area in areas}
         return states
 
-    def require_all(self) -> None:
+    def require_all(self) -> tuple[str, ...]:
         """Require that nothing is missing.
+
+        Returns
+        -------
+        tuple of str
+            What the notes must say of charts that no page carries [-]
 
         Raises
         ------
@@ -154,9 +159,15 @@ class Beside:
                 row, _ = min(unread.cells)
                 name = f"{unread.listing.title}, {unread.listing.rows[row].label}"
                 raise ReleaseError(f"read-back: {name} is nowhere on the card as it should be")
-        for chart, panels in zip(self.card.back.charts, self.panels, strict=True):
-            if len(panels) < len(chart.panels):
+        charts = self.card.back.charts
+        for chart, panels in zip(charts, self.panels, strict=True):
+            if 0 < len(panels) < len(chart.panels):
                 raise ReleaseError(f"read-back: {chart.title} lacks panels")
+        return tuple(
+            left_out_text(chart.title)
+            for chart, panels in zip(charts, self.panels, strict=True)
+            if not panels
+        )
 
 
 def read_listing(words: Sequence[Word], unread: Unread, place: str) -> bool:
@@ -262,14 +273,21 @@ def _check_groups(
 ) -> None:
     """Require the name of each group over the first of its columns."""
     starts = [c for c, column in enumerate(columns) if c == 0 or columns[c - 1][0] != column[0]]
-    names = before[len(before) - len(starts) :]
-    if [word.text for word in names] != [listing.groups[columns[c][0]].name for c in starts]:
-        raise ReleaseError(f"read-back: {name}: groups are {[word.text for word in names]}")
-    ends = [*(names[k].x for k in range(1, len(names))), float("inf")]
-    for k, (c, after) in enumerate(pairwise([*starts, len(heads)])):
-        inside = all(names[k].x <= _end(head) <= ends[k] + _NEAR for head in heads[c:after])
-        if not inside:
+    right = math.inf
+    at = len(before)
+    # From the last group to the first: a long name is broken over lines.
+    for c, after in reversed(list(pairwise([*starts, len(heads)]))):
+        wanted = squeezed(listing.groups[columns[c][0]].name)
+        found = ""
+        while at > 0 and found != wanted and wanted.endswith(found):
+            at -= 1
+            found = squeezed(before[at].text) + found
+        if found != wanted:
+            raise ReleaseError(f"read-back: {name}: a group is named {found!r}")
+        left = before[at].x
+        if not all(left <= _end(head) <= right + _NEAR for head in heads[c:after]):
             raise ReleaseError(f"read-back: {name}: a head stands under another group")
+        right = left
 
 
 # ------------------------------------------------------------------------------------------ charts
@@ -308,14 +326,10 @@ def read_chart(
         raise ReleaseError(f"read-back: {place}, {chart.title}: does not say how to read it")
     seen: set[int] = set()
     for index, panel in enumerate(chart.panels):
-        names = (printable(panel.name), printable(chart.up.label))
-        start = next(
-            (k for k in range(at, len(words) - 1) if (words[k].text, words[k + 1].text) == names),
-            None,
-        )
+        start = find_text(words, panel.name + chart.up.label, at)
         if start is not None:
             name = f"read-back: {place}, {chart.title}, {panel.name}"
-            at = _read_panel(_Panel(words, start + 2, card, chart, panel, name))
+            at = _read_panel(_Panel(words, start, card, chart, panel, name))
             seen.add(index)
     if seen and (at >= len(words) or words[at].text != printable(chart.across.label)):
         found = words[at].text if at < len(words) else "nothing"

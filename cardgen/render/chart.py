@@ -16,12 +16,13 @@ from cardgen.tables.back import Area, Axis, Chart, Curve, Panel
 from cardgen.tables.card import Card
 
 NAME_SIZE: Final = 11.0
-LEAST_PANEL: Final = 96.0  # height of the field of a panel [pt]
+LEAST_PANEL: Final = 84.0  # height of the field of a panel [pt]
 GREATEST_PANEL: Final = 230.0
 LEAST_FIELD: Final = 120.0  # width of the field of a panel [pt]
 BETWEEN: Final = 10.0
 HATCH_SPACING: Final = 4.0
 HATCH: Final = 0.6
+_UNDER_NAME: Final = 2.0  # a line gap from the name to the highest figure [pt]
 _HALO: Final = 1.5  # white round a word on a line [pt]
 _WEIGHTS: Final = {"setting": 1.0, "ceiling": 2.2, "ray": 0.5}
 _SPEED_WEIGHT: Final = 1.8  # of what a setting gives, where thin rays are drawn as well
@@ -84,9 +85,21 @@ def chart_lines(
     return tuple(lines)
 
 
-def panel_height(field: float) -> float:
+def _name_lines(chart: Chart, panel: Panel, room: float) -> tuple[str, ...]:
+    """Return the name of a panel, broken so that the label of its ordinate stands beside it."""
+    label = width(chart.up.label, "regular", NOTE) + 8.0
+    return wrap(panel.name, "bold", size=NAME_SIZE, measure=room - label)
+
+
+def _room(measure: float, across: int) -> float:
+    return (measure - BETWEEN * (across - 1)) / across
+
+
+def panel_height(part: ChartPart, measure: float) -> float:
     """Return the height of a panel with its name and the figures of its abscissa [pt]."""
-    return LEADING * NAME_SIZE + field + LEADING * NOTE + 4.0
+    room = _room(measure, part.across)
+    lines = max(len(_name_lines(part.chart, panel, room)) for panel in part.chart.panels)
+    return LEADING * NAME_SIZE * lines + _UNDER_NAME + part.field + LEADING * NOTE + 4.0
 
 
 def chart_height(part: ChartPart, *, measure: float, continued: str) -> float:
@@ -108,7 +121,7 @@ def chart_height(part: ChartPart, *, measure: float, continued: str) -> float:
     """
     lines = sum(LEADING * size for _, _, size in chart_lines(part.chart, measure, continued))
     rows = -(-len(part.panels) // part.across)
-    return lines + 4.0 + rows * panel_height(part.field) + LEADING * NOTE
+    return lines + 4.0 + rows * panel_height(part, measure) + LEADING * NOTE
 
 
 def place_chart(
@@ -163,8 +176,8 @@ def place_panels(part: ChartPart, card: Card, *, x: float, top: float, measure: 
     """
     boxes: list[Box] = []
     y = top
-    each = (measure - BETWEEN * (part.across - 1)) / part.across
-    height = panel_height(part.field)
+    each = _room(measure, part.across)
+    height = panel_height(part, measure)
     for k, index in enumerate(part.panels):
         column, row = k % part.across, k // part.across
         boxes += _panel(
@@ -172,7 +185,7 @@ def place_panels(part: ChartPart, card: Card, *, x: float, top: float, measure: 
             part.chart.panels[index],
             card,
             left=x + column * (each + BETWEEN),
-            top=y - row * height,
+            low=y - (row + 1) * height + LEADING * NOTE + 4.0,
             room=each,
             field=part.field,
         )
@@ -190,24 +203,21 @@ def _panel(
     card: Card,
     *,
     left: float,
-    top: float,
+    low: float,
     room: float,
     field: float,
 ) -> list[Box]:
     """Return one panel: ground, grid, lines, then every word on white."""
     figures = _left(chart)
-    y = top - LEADING * NAME_SIZE
+    place = _Field(left + figures, low, room - figures, field, chart.across, chart.up)
+    lines = _name_lines(chart, panel, room)
+    y = low + field + _UNDER_NAME + 3.0
     boxes: list[Box] = [
-        Run(left, y + 3.0, printable(panel.name), "bold", NAME_SIZE),
-        Run(
-            left + width(printable(panel.name), "bold", NAME_SIZE) + 8.0,
-            y + 3.0,
-            chart.up.label,
-            "regular",
-            NOTE,
-        ),
+        Run(left, y + LEADING * NAME_SIZE * (len(lines) - 1 - k), line, "bold", NAME_SIZE)
+        for k, line in enumerate(lines)
     ]
-    place = _Field(left + figures, y - field, room - figures, field, chart.across, chart.up)
+    after = left + width(lines[-1], "bold", NAME_SIZE) + 8.0
+    boxes.append(Run(after, y, chart.up.label, "regular", NOTE))
     for area in panel.areas:
         pieces = _clipped_pieces(place, area)
         if pieces:

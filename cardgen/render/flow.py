@@ -121,7 +121,10 @@ def back_pages(
     pages = _Pages(card, measure, height, [[]])
     for listing in listings:
         _add_listing(pages, listing)
+    too_large = left_out(card, measure=measure, height=height)
     for chart in card.back.charts:
+        if chart.title in too_large:
+            continue
         pages.turn()
         _add_chart(pages, chart)
     return tuple(tuple(page) for page in pages.done if page)
@@ -161,6 +164,32 @@ def _add_listing(pages: _Pages, listing: Listing) -> None:
             first = last
 
 
+def left_out(card: Card, *, measure: float, height: float) -> tuple[str, ...]:
+    """Return the titles of charts of which a page cannot hold even one panel with its reasons.
+
+    Parameters
+    ----------
+    card : Card
+        The card [-]
+    measure, height : float
+        Room across and down between head and foot [pt]
+
+    Returns
+    -------
+    tuple of str
+        Charts that a paper so small must leave to the screen [-]
+    """
+    pages = _Pages(card, measure, height, [[]])
+    return tuple(
+        chart.title
+        for chart in card.back.charts
+        if not all(
+            pages.fits(ChartPart(chart, (index,), side_by_side(chart, measure), LEAST_PANEL))
+            for index in range(len(chart.panels))
+        )
+    )
+
+
 def _add_chart(pages: _Pages, chart: Chart) -> None:
     across = side_by_side(chart, pages.measure)
     first = 0
@@ -168,10 +197,6 @@ def _add_chart(pages: _Pages, chart: Chart) -> None:
         panels = tuple(range(first, len(chart.panels)))
         while panels and not pages.fits(ChartPart(chart, panels, across, LEAST_PANEL)):
             panels = panels[: -across if len(panels) % across == 0 else -(len(panels) % across)]
-        if not panels:
-            raise ReleaseError(
-                f"one panel of {chart.title!r} does not fit the paper; choose a larger paper"
-            )
         part = ChartPart(chart, panels, across, LEAST_PANEL)
         rows = -(-len(panels) // across)
         spare = (pages.height - pages.used([part])) / rows

@@ -98,7 +98,7 @@ def _figure(card: Card, chart: Chart) -> str:
     across = side_by_side(chart, MEASURE)
     part = ChartPart(chart, tuple(range(len(chart.panels))), across, FIELD)
     rows = -(-len(chart.panels) // across)
-    height = rows * panel_height(FIELD) + LEADING * NOTE + 4.0
+    height = rows * panel_height(part, MEASURE) + LEADING * NOTE + 4.0
     boxes = place_panels(part, card, x=0.0, top=height, measure=MEASURE)
     drawn = "\n".join(_element(box, height) for box in boxes)
     states = {(CellState.FORBIDDEN, area.reason) for panel in chart.panels for area in panel.areas}

@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import contextlib
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from itertools import groupby
 from typing import Final
 
@@ -17,14 +18,20 @@ from cardgen.render.columns import (
     lay_out_grid,
 )
 from cardgen.render.edition import Edition
-from cardgen.render.flow import BackPage, back_pages, place_back, subject
+from cardgen.render.flow import BackPage, back_pages, left_out, place_back, subject
 from cardgen.render.grid import grid_height, place_grid
 from cardgen.render.legend import legend_height, legend_lines, place_legend
 from cardgen.render.marking import Marking, mark_page, place_foot, place_head
 from cardgen.render.notes import NotesPage, place_notes, share_out
-from cardgen.render.paper import Paper
-from cardgen.render.wording import OF_ALL, continued_text, note_sections, shows_temperature
-from cardgen.tables.card import Card, CardTable
+from cardgen.render.paper import Paper, Room
+from cardgen.render.wording import (
+    OF_ALL,
+    continued_text,
+    left_out_text,
+    note_sections,
+    shows_temperature,
+)
+from cardgen.tables.card import Card, CardTable, Section
 
 SETTING_SIZES: Final = (18.0, 17.0, 16.0, 15.0, 14.0, 13.0, LEAST_SETTING)
 BETWEEN_TABLES: Final = 8.0
@@ -32,28 +39,6 @@ TABLES_PER_PAGE: Final = 2
 
 # Both say "page 99 of 99" while heights are measured, so that numbering cannot move a line.
 _MANY: Final = 99
-
-
-@dataclass(frozen=True, slots=True)
-class _Room:
-    """The part of a page that may be printed on [pt]; holes are left on a front."""
-
-    paper: Paper
-
-    @property
-    def measure(self) -> float:
-        return self.paper.width - self.paper.binder - self.paper.margin
-
-    @property
-    def top(self) -> float:
-        return self.paper.height - self.paper.margin
-
-    @property
-    def bottom(self) -> float:
-        return self.paper.margin
-
-    def left(self, page: int) -> float:
-        return self.paper.binder if page % 2 == 1 else self.paper.margin
 
 
 def lay_out(edition: Edition, paper: Paper) -> tuple[Page, ...]:
@@ -76,15 +61,18 @@ def lay_out(edition: Edition, paper: Paper) -> tuple[Page, ...]:
     ReleaseError
         Not even one row with its explanations fits the paper at the least sizes.
     """
-    room = _Room(paper)
-    styles, plan = _plan(edition, room)
+    room = Room(paper)
+    across, styles, plan = _best_plan(edition, room)
     height = _room_on_back(edition, room)
     backs = back_pages(edition.card, listings(edition.card), measure=room.measure, height=height)
+    missing = left_out(edition.card, measure=room.measure, height=height)
     sections = note_sections(edition.card, edition.identity)
+    if missing:
+        sections = (*sections, Section("Left out", tuple(map(left_out_text, missing))))
     notes = share_out(sections, measure=room.measure, height=height)
     contents = _two_sided(plan, (*backs, *notes))
     return tuple(
-        _table_page(edition, room, styles, plan, contents, page=page)
+        _table_page(edition, across, styles, plan, contents, page=page)
         if isinstance(content, int)
         else _back_page(edition, room, contents, page=page)
         for page, content in enumerate(contents, start=1)
@@ -110,7 +98,38 @@ def _two_sided(plan: Plan, backs: Sequence[BackPage | NotesPage]) -> tuple[Conte
 Plan = tuple[tuple[Part, ...], ...]  # the parts on each page
 
 
-def _plan(edition: Edition, room: _Room) -> tuple[tuple[Style, ...], Plan]:
+def _best_plan(edition: Edition, room: Room) -> tuple[Room, tuple[Style, ...], Plan]:
+    """Return which way round the tables stand, the style of each page, and the pages.
+
+    Upright, unless that parts the rpm of one row over pages and the broad side keeps them together
+    on no more pages. Two pages to a sheet are always upright.
+    """
+    try:
+        styles, plan = _plan(edition, room)
+    except ReleaseError:
+        if room.paper.sheet is not None:
+            raise
+        broad = Room(room.paper, landscape=True)
+        return broad, *_plan(edition, broad)
+    if room.paper.sheet is None and _parts_rpm(edition.card, plan):
+        broad = Room(room.paper, landscape=True)
+        with contextlib.suppress(ReleaseError):
+            other_styles, other = _plan(edition, broad)
+            if len(other) <= len(plan) and not _parts_rpm(edition.card, other):
+                return broad, other_styles, other
+    return room, styles, plan
+
+
+def _parts_rpm(card: Card, plan: Plan) -> bool:
+    """Return whether the rpm of one row stand on different pages."""
+    return any(
+        len({column[1] for column in part.columns}) < len(card.tables[part.table].rpm)
+        for parts in plan
+        for part in parts
+    )
+
+
+def _plan(edition: Edition, room: Room) -> tuple[tuple[Style, ...], Plan]:
     """Return the pages and the style of each: fewest pages first, then the largest type.
 
     Numbers stand in one arrangement through the whole card, and a table has one size wherever
@@ -137,7 +156,7 @@ def _plan(edition: Edition, room: _Room) -> tuple[tuple[Style, ...], Plan]:
     return styles, plan
 
 
-def _grown(edition: Edition, room: _Room, plan: Plan, *, stacked: bool) -> tuple[Style, ...]:
+def _grown(edition: Edition, room: Room, plan: Plan, *, stacked: bool) -> tuple[Style, ...]:
     """Return the largest style for each page, the same on all pages of one table."""
     sizes: dict[tuple[int, ...], float] = {}
     tables = [tuple(part.table for part in parts) for parts in plan]
@@ -149,7 +168,7 @@ def _grown(edition: Edition, room: _Room, plan: Plan, *, stacked: bool) -> tuple
     return tuple(Style(sizes[key], stacked) for key in tables)
 
 
-def _paginate(edition: Edition, room: _Room, style: Style) -> Plan | None:
+def _paginate(edition: Edition, room: Room, style: Style) -> Plan | None:
     """Return the pages of a card in a style, None where a row or a column does not fit."""
     pages: list[tuple[Part, ...]] = []
     waiting: list[Part] = []  # a whole table that may share its page with the next
@@ -176,7 +195,7 @@ def _paginate(edition: Edition, room: _Room, style: Style) -> Plan | None:
     return tuple(pages)
 
 
-def _parts(edition: Edition, room: _Room, style: Style, index: int) -> tuple[Part, ...] | None:
+def _parts(edition: Edition, room: Room, style: Style, index: int) -> tuple[Part, ...] | None:
     """Return a table cut into as few parts as fit a page each, evenly."""
     whole = _whole(edition, room, style, index)
     for block in _column_blocks(edition, room, style, whole):
@@ -186,7 +205,7 @@ def _parts(edition: Edition, room: _Room, style: Style, index: int) -> tuple[Par
     return None
 
 
-def _whole(edition: Edition, room: _Room, style: Style, index: int) -> Part:
+def _whole(edition: Edition, room: Room, style: Style, index: int) -> Part:
     """Return a whole table, its temperatures side by side if they fit, else under each other."""
     table = edition.card.tables[index]
     altitudes, temperatures = range(len(table.altitude)), range(len(table.isa_deviation))
@@ -208,7 +227,7 @@ def _whole(edition: Edition, room: _Room, style: Style, index: int) -> Part:
 
 
 def _column_blocks(
-    edition: Edition, room: _Room, style: Style, whole: Part
+    edition: Edition, room: Room, style: Style, whole: Part
 ) -> Sequence[tuple[Part, ...]]:
     """Return ways to cut the columns so that each block fits across, fewest blocks first."""
     ways = []
@@ -226,7 +245,7 @@ def _column_blocks(
 
 
 def _cut_rows(
-    edition: Edition, room: _Room, style: Style, blocks: tuple[Part, ...]
+    edition: Edition, room: Room, style: Style, blocks: tuple[Part, ...]
 ) -> tuple[Part, ...] | None:
     """Return blocks of columns cut into parts of a page each, None where one row is too high."""
     parts: list[Part] = []
@@ -243,7 +262,7 @@ def _cut_rows(
 
 def _cut_block(
     edition: Edition,
-    room: _Room,
+    room: Room,
     style: Style,
     block: Part,
     groups: Sequence[tuple[tuple[int, int], ...]],
@@ -280,7 +299,7 @@ def _even_spans(length: int, count: int) -> list[tuple[int, int]]:
     return spans
 
 
-def _fits(edition: Edition, room: _Room, style: Style, parts: tuple[Part, ...]) -> bool:
+def _fits(edition: Edition, room: Room, style: Style, parts: tuple[Part, ...]) -> bool:
     """Return whether parts share one page with its marking and the meaning of their marks."""
     card = edition.card
     grids = [lay_out_grid(edition, part, style=style, measure=room.measure) for part in parts]
@@ -324,7 +343,7 @@ def _where(pages: Sequence[int], page: int) -> str:
 
 def _table_page(
     edition: Edition,
-    room: _Room,
+    room: Room,
     styles: Sequence[Style],
     plan: Plan,
     contents: Sequence[Content],
@@ -352,21 +371,21 @@ def _table_page(
         y -= grid_height(grid, continued) + BETWEEN_TABLES
     boxes += place_legend(legend_lines(card, parts, measure), x=x, top=y + BETWEEN_TABLES)
     boxes += place_foot(marking, x=x, bottom=room.bottom, measure=measure)
-    return Page(room.paper.width, room.paper.height, tuple(boxes))
+    return Page(room.width, room.height, tuple(boxes))
 
 
-def _mark_back(edition: Edition, room: _Room, *, page: int, pages: int) -> Marking:
+def _mark_back(edition: Edition, room: Room, *, page: int, pages: int) -> Marking:
     tables = edition.card.tables
     return mark_page(edition, tables, page=page, pages=pages, measure=room.measure, where=OF_ALL)
 
 
-def _room_on_back(edition: Edition, room: _Room) -> float:
+def _room_on_back(edition: Edition, room: Room) -> float:
     """Return the height a back page has between its head and its foot."""
     marking = _mark_back(edition, room, page=_MANY, pages=_MANY)
     return room.top - room.bottom - marking.head_height - marking.foot_height
 
 
-def _back_page(edition: Edition, room: _Room, contents: Sequence[Content], *, page: int) -> Page:
+def _back_page(edition: Edition, room: Room, contents: Sequence[Content], *, page: int) -> Page:
     x, measure, content = room.left(page), room.measure, contents[page - 1]
     marking = _mark_back(edition, room, page=page, pages=len(contents))
     top = room.top - marking.head_height
@@ -384,8 +403,8 @@ def _back_page(edition: Edition, room: _Room, contents: Sequence[Content], *, pa
         where = [_where(_pages_of(contents, subject(part)), page) for part in content]
         boxes = place_back(edition.card, content, where, x=x, top=top, measure=measure)
     return Page(
-        room.paper.width,
-        room.paper.height,
+        room.width,
+        room.height,
         (
             *place_head(marking, x=x, top=room.top, measure=measure),
             *boxes,

@@ -87,15 +87,25 @@ def _natural(listing: Listing, columns: tuple[Column, ...]) -> float:
 
 
 def _column_widths(listing: Listing, columns: tuple[Column, ...]) -> dict[Column, float]:
-    """Return the widths of columns; the first of a group gives way to a long name of the group."""
+    """Return the widths of columns with the air on both sides."""
     widths = _content_widths(listing)
-    found = {column: widths[column] + 2.0 * PAD for column in columns}
-    for group, members in groupby(columns, key=lambda column: column[0]):
-        first, *others = members
-        name = width(listing.groups[group].name, "bold", LEAST_FIGURE) + 2.0 * PAD
-        taken = found[first] + sum(found[other] for other in others)
-        found[first] += max(0.0, name - taken)
-    return found
+    return {column: widths[column] + 2.0 * PAD for column in columns}
+
+
+def _group_lines(part: ListingPart, measure: float) -> dict[int, tuple[str, ...]]:
+    """Return the name of each group of a part, broken to stand over its columns."""
+    ends, right = _ends(part, 0.0, measure)
+    starts = [column for column in part.columns if ends[column][0] in _cuts(part, ends)]
+    edges = [*(ends[column][0] for column in starts[1:]), right]
+    return {
+        column[0]: wrap(
+            part.listing.groups[column[0]].name,
+            "bold",
+            size=LEAST_FIGURE,
+            measure=edge - ends[column][0] - 2.0 * PAD,
+        )
+        for column, edge in zip(starts, edges, strict=True)
+    }
 
 
 def column_blocks(listing: Listing, measure: float) -> tuple[tuple[Column, ...], ...] | None:
@@ -175,9 +185,10 @@ def row_height(listing: Listing) -> float:
     return LEADING * (LEAST_SETTING if strong else LEAST_FIGURE)
 
 
-def _head_height(listing: Listing) -> float:
-    _, head = head_size(listing)
-    return LEADING * LEAST_FIGURE + LEADING * head + 4.0
+def _head_height(part: ListingPart, measure: float) -> float:
+    _, head = head_size(part.listing)
+    lines = max(len(lines) for lines in _group_lines(part, measure).values())
+    return LEADING * LEAST_FIGURE * lines + LEADING * head + 4.0
 
 
 def part_height(
@@ -209,7 +220,7 @@ def part_height(
         Height with title, heads, rows and the meaning of marks [pt]
     """
     listing = part.listing
-    height = _head_height(listing) + row_height(listing) * len(part.rows) + 2.0
+    height = _head_height(part, measure) + row_height(listing) * len(part.rows) + 2.0
     if titled:
         lines = _title_lines(listing, measure, continued)
         height += sum(LEADING * size for _, _, size in lines) + 2.0
@@ -261,8 +272,8 @@ def place_part(
         y -= 2.0
     ends, right = _ends(part, x, measure)
     start = y
-    boxes += _heads(part, x, y, ends, right)
-    y -= _head_height(part.listing)
+    boxes += _heads(part, x, y, measure=measure)
+    y -= _head_height(part, measure)
     y, rows = _rows(part, x, y, ends, right)
     boxes += rows
     boxes.append(Rule(x, y, right, y, thickness=1.2))
@@ -308,20 +319,17 @@ def _right(text: str, end: float, y: float, face: Face, size: float) -> Run:
     return Run(end - width(text, face, size), y, text, face, size)
 
 
-def _heads(
-    part: ListingPart,
-    x: float,
-    top: float,
-    ends: dict[Column, tuple[float, float]],
-    right: float,
-) -> list[Box]:
+def _heads(part: ListingPart, x: float, top: float, *, measure: float) -> list[Box]:
     listing = part.listing
-    y = top - LEADING * LEAST_FIGURE
+    ends, right = _ends(part, x, measure)
     boxes: list[Box] = []
-    for k, column in enumerate(part.columns):
-        if k == 0 or part.columns[k - 1][0] != column[0]:
-            name = listing.groups[column[0]].name
-            boxes.append(Run(ends[column][0] + PAD, y, name, "bold", LEAST_FIGURE))
+    names = _group_lines(part, measure)
+    most = max(len(lines) for lines in names.values())
+    for cut, lines in zip(_cuts(part, ends), names.values(), strict=True):
+        for k, line in enumerate(lines):
+            base = top - LEADING * LEAST_FIGURE * (most - len(lines) + k + 1)
+            boxes.append(Run(cut + PAD, base, line, "bold", LEAST_FIGURE))
+    y = top - LEADING * LEAST_FIGURE * most
     face, size = head_size(listing)
     y -= LEADING * size
     label = x + _label_width(listing)

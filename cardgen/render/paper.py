@@ -7,7 +7,11 @@ from dataclasses import dataclass
 from typing import Final
 
 from cardgen.errors import UsageError
-from cardgen.render.boxes import Box, Page, Rule, moved
+from cardgen.render.boxes import Box, Page, Rule, Run, moved
+from cardgen.render.fonts import width as width_of
+
+FOLD: Final = "fold or cut"
+_LABEL: Final = 9.0  # size of those words [pt]
 
 INCH: Final = 72.0
 MILLIMETRE: Final = 72.0 / 25.4
@@ -35,6 +39,61 @@ class Paper:
     sheet: tuple[float, float] | None = None
 
 
+@dataclass(frozen=True, slots=True)
+class Room:
+    """The part of a page that may be printed on [pt].
+
+    Holes are left on a front and right on a back. With the broad side down they are above or below,
+    whichever way the printer turns the page, so both stay free.
+    """
+
+    paper: Paper
+    landscape: bool = False
+
+    @property
+    def width(self) -> float:
+        """Width of the page [pt]."""
+        return self.paper.height if self.landscape else self.paper.width
+
+    @property
+    def height(self) -> float:
+        """Height of the page [pt]."""
+        return self.paper.width if self.landscape else self.paper.height
+
+    @property
+    def measure(self) -> float:
+        """Room across [pt]."""
+        if self.landscape:
+            return self.width - 2.0 * self.paper.margin
+        return self.width - self.paper.binder - self.paper.margin
+
+    @property
+    def top(self) -> float:
+        """Upper end of the room [pt]."""
+        return self.height - (self.paper.binder if self.landscape else self.paper.margin)
+
+    @property
+    def bottom(self) -> float:
+        """Lower end of the room [pt]."""
+        return self.paper.binder if self.landscape else self.paper.margin
+
+    def left(self, page: int) -> float:
+        """Return the left end of the room.
+
+        Parameters
+        ----------
+        page : int
+            Number of the page; odd ones are fronts [-]
+
+        Returns
+        -------
+        float
+            Its abscissa [pt]
+        """
+        front = page % 2 == 1
+        return self.paper.binder if front and not self.landscape else self.paper.margin
+
+
 _HALF_LETTER: Final = (5.5 * INCH, 8.5 * INCH)
 _A5: Final = (148.0 * MILLIMETRE, 210.0 * MILLIMETRE)
 
@@ -53,6 +112,23 @@ PAPERS: Final[dict[str, Paper]] = {
     )
 }
 """Papers by name. "letter" and "a4" are two half-size pages on one landscape sheet."""
+
+
+def carries_two(width: float, height: float) -> bool:
+    """Return whether a sheet of a finished card carries two pages side by side.
+
+    Parameters
+    ----------
+    width, height : float
+        Size of the sheet [pt]
+
+    Returns
+    -------
+    bool
+        Whether it is the sheet of one of the papers, not a page with its broad side down [-]
+    """
+    sheets = (paper.sheet for paper in PAPERS.values() if paper.sheet is not None)
+    return any(abs(width - w) < 1.0 and abs(height - h) < 1.0 for w, h in sheets)
 
 
 def find_paper(name: str) -> Paper:
@@ -105,6 +181,14 @@ def impose(pages: Sequence[Page], paper: Paper) -> tuple[Page, ...]:
     marks: tuple[Box, ...] = (
         *(_dashes(middle, height - 4.0, height - 16.0)),
         *(_dashes(middle, 16.0, 4.0)),
+        # On the left page, which every sheet has.
+        Run(
+            middle - 4.0 - width_of(FOLD, "regular", _LABEL),
+            height - 14.0,
+            FOLD,
+            "regular",
+            _LABEL,
+        ),
     )
     sheets = []
     for first in range(0, len(pages), 2):

@@ -93,9 +93,10 @@ def read_back(pdf: bytes, edition: Edition) -> None:
         if cells:
             missing = cell_name(card, table, min(cells))
             raise ReleaseError(f"read-back: {missing} is nowhere on the card as it should be")
-    beside.require_all()
+    charts_missing = beside.require_all()
     _check_continued(pages, [*spans, *beside.listed, *beside.charted])
     everything = [word for page in pages for word in page]
+    _check_present(everything, "the card", charts_missing)
     for section in note_sections(card, edition.identity):
         _check_present(everything, "the card", [section.title])
         for line in section.lines:

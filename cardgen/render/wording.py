@@ -369,6 +369,11 @@ def digest_text(card: Card, issue: int, replaces: int | None) -> str:
     return f"Profile {card.digest[:DIGEST_DIGITS]}, issue {issue}{void}"
 
 
+def left_out_text(title: str) -> str:
+    """Return what a card says of a chart that its paper has no room for."""
+    return f"{title}: the chart does not fit this paper; it is in the card for the screen."
+
+
 def note_sections(card: Card, identity: Identity) -> tuple[Section, ...]:
     """Return the sections of the limits-and-notes pages.
 

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Any, Final
 
 from cardgen.errors import ReleaseError
 from cardgen.render.content_stream import PageFont, characters_of, shown_text
+from cardgen.render.paper import carries_two
 
 if TYPE_CHECKING:
     from pypdf import PageObject
@@ -45,7 +46,7 @@ def read_words(pdf: bytes) -> tuple[tuple[Word, ...], ...]:
     Returns
     -------
     tuple of tuple of Word
-        Per card page its words; a landscape sheet is two pages [-]
+        Per card page its words; a two-up sheet is two pages [-]
 
     Raises
     ------
@@ -64,7 +65,7 @@ def read_words(pdf: bytes) -> tuple[tuple[Word, ...], ...]:
             if words is None:
                 words = _general_words(sheet)
             wide, high = float(sheet.mediabox.width), float(sheet.mediabox.height)
-            if wide > high:
+            if carries_two(wide, high):
                 pages.append(tuple(word for word in words if word.x < 0.5 * wide))
                 right = tuple(word for word in words if word.x >= 0.5 * wide)
                 if right:
