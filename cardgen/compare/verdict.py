@@ -99,7 +99,12 @@ def verdict(
     str
         What percent means, if that changed, what moved most and whether that is significant [-]
     """
-    text = _moved_most(changes, scale)
+    text = _moved_most([c for c in changes if c.basis == "percent"], scale)
+    same_power = [c for c in changes if c.basis == "power"]
+    if same_power:
+        # A rating that changed makes two comparisons; each has its own greatest move.
+        again = _moved_most(same_power, scale)
+        text = f"At the same percent: {_lower(text)}; at the same power: {_lower(again)}"
     note = rating_note(old_rating, new_rating)
     if note:
         text = f"{note}. {text}"
@@ -164,9 +169,12 @@ def _moved_most(changes: Sequence[Change], scale: Scale) -> str:
         else f"significant in {count} of {whole} settings, where it is more than its tolerance "
         f"(such as {within})"
     )
-    both = len({change.basis for change in changes}) > 1
-    what = "at the same percent or the same power" if both else "at the same power"
-    return f"{NAMES[place].capitalize()} moved most {what}, by {span}: {how}"
+    return f"{NAMES[place].capitalize()} moved most, by {span}: {how}"
+
+
+def _lower(sentence: str) -> str:
+    """Return a sentence to go on with."""
+    return sentence[:1].lower() + sentence[1:]
 
 
 def _span(least: float, greatest: float, places: int, unit: str) -> str:
