@@ -26,8 +26,6 @@ EDGE = {"profile", "render", "cli"}
 MOST_LINES = 450
 LONGER = {
     "units.py": "the table of units is one list",
-    "profile/points.py": "one file format, its columns and its messages",
-    "profile/fit_file.py": "one file format, written and read side by side",
 }
 
 #: Everything that a process without any command may load besides the standard library.

@@ -14,7 +14,8 @@ from cardgen.constants import FOOT, HOUR, INCH_OF_MERCURY, POUND
 from cardgen.limits.gauges import true_manifold_pressure
 from cardgen.profile import load_profile
 from cardgen.profile.assembly import model_of
-from cardgen.profile.fit_file import fit_path, learned_for, read_fit
+from cardgen.profile.fit_file import fit_path, learned_for
+from cardgen.profile.fit_record import read_fit
 from cardgen.profile.fitting import fit_points, start_of
 from cardgen.profile.points import read_points
 from cardgen.tables.solution import Situation, solve

@@ -14,7 +14,8 @@ from cardgen.errors import DataError
 from cardgen.fit import estimate
 from cardgen.profile import load_profile
 from cardgen.profile.assembly import subject_of
-from cardgen.profile.fit_file import fit_path, fit_text, learned_for, read_fit
+from cardgen.profile.fit_file import fit_path, learned_for
+from cardgen.profile.fit_record import fit_text, read_fit
 from cardgen.profile.fitting import fit_points, record_of, start_of
 from cardgen.profile.points import read_points
 

@@ -9,6 +9,7 @@ import click
 
 if TYPE_CHECKING:
     from cardgen.profile.document import Profile
+    from cardgen.profile.fit_record import FitRecord
 
 
 @click.command()
@@ -51,10 +52,16 @@ def fit(
       cardgen fit profiles/aircraft/specimen.yaml --points flights.csv --out new.fit.yaml
       cardgen fit profiles/aircraft/specimen.yaml --sheet fly-next.pdf
     """
-    from cardgen.errors import UsageError  # noqa: PLC0415
+    import json  # noqa: PLC0415
+
+    from cardgen.errors import DataError, UsageError  # noqa: PLC0415
     from cardgen.profile import load_profile  # noqa: PLC0415
-    from cardgen.profile.fit_file import fit_path, fit_text, read_fit  # noqa: PLC0415
-    from cardgen.profile.fitting import fit_points, record_of, start_of  # noqa: PLC0415
+    from cardgen.profile.fit_file import fit_path  # noqa: PLC0415
+    from cardgen.profile.fit_lines import report_lines  # noqa: PLC0415
+    from cardgen.profile.fit_record import fit_text  # noqa: PLC0415
+    from cardgen.profile.fit_report import report_object, report_of, warnings_of  # noqa: PLC0415
+    from cardgen.profile.fit_words import suspicion_problem  # noqa: PLC0415
+    from cardgen.profile.fitting import fit_points, record_of, start_of, suspect  # noqa: PLC0415
     from cardgen.profile.points import read_points  # noqa: PLC0415
     from cardgen.render.files import write_whole  # noqa: PLC0415
 
@@ -62,7 +69,7 @@ def fit(
     if sheet is not None and not points:
         _write_sheet(read, sheet, fit_file=out)
         return 0
-    paths = points or tuple(str(path) for path in read.evidence)
+    paths = points or tuple(_shown(path) for path in read.evidence)
     if not paths:
         raise UsageError(
             f"{profile}: nothing to fit to; give --points FILE, or list files under the profile's "
@@ -70,14 +77,43 @@ def fit(
         )
     target = out or fit_path(read)
     given = read_points(read, paths)
-    start = start_of(read, given, record=read_fit(target, read) if target.exists() else None)
+    start = start_of(read, given, record=_standing(read, target))
+    suspicions = suspect(read, given, start)
+    if suspicions and not accept_suspect:
+        raise DataError([suspicion_problem(suspicion) for suspicion in suspicions])
     found = fit_points(read, given, start)
-    record = record_of(read, given, start, found=found, warnings=start.notes)
+    report = report_of(read, given, start, found=found, suspicions=suspicions)
+    record = record_of(read, given, start, found=found, warnings=warnings_of(report))
     write_whole(target, fit_text(record).encode())
-    click.echo(f"Written: {target}")
+    if as_json:
+        click.echo(json.dumps(report_object(report), indent=1, allow_nan=False))
+    else:
+        for line in report_lines(report):
+            click.echo(line)
+    click.echo(f"Written: {target}", err=as_json)
     if sheet is not None:
         _write_sheet(read, sheet, fit_file=target)
     return 0
+
+
+def _shown(path: Path) -> str:
+    """Return a path as short as it can be said from here."""
+    here = Path.cwd()
+    return str(path.relative_to(here)) if path.is_relative_to(here) else str(path)
+
+
+def _standing(profile: Profile, path: Path) -> FitRecord | None:
+    """Return the fit that is about to be replaced, None where there is none that can be read."""
+    from cardgen.errors import DataError  # noqa: PLC0415
+    from cardgen.profile.fit_record import read_fit  # noqa: PLC0415
+
+    if not path.exists():
+        return None
+    try:
+        return read_fit(path, profile)
+    except DataError as error:
+        click.echo(f"{error}\nThe fit file is bad: it is not used and written anew.", err=True)
+        return None
 
 
 def _write_sheet(profile: Profile, sheet: Path, *, fit_file: Path | None) -> None:

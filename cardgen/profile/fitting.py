@@ -16,17 +16,12 @@ from cardgen.fit import (
     prior_covariance,
     prior_mean,
 )
+from cardgen.fit.suspicion import Suspicion, suspect_columns
 from cardgen.profile.assembly import subject_of
 from cardgen.profile.digest import MODEL_VERSION
 from cardgen.profile.document import Profile
-from cardgen.profile.fit_file import (
-    Earlier,
-    FitRecord,
-    Match,
-    match,
-    mixture_digests,
-    part_digests,
-)
+from cardgen.profile.fit_file import Match, match, mixture_digests, part_digests
+from cardgen.profile.fit_record import Earlier, FitRecord
 from cardgen.profile.points import Points
 
 FloatArray = npt.NDArray[np.float64]
@@ -123,6 +118,32 @@ def _carried(profile: Profile, record: FitRecord, found: Match, changed: str) ->
 
 
 _STARTS: Final = "Starts from an earlier fit to {} rows, not given here."
+
+
+def suspect(profile: Profile, points: Points, start: Start) -> tuple[Suspicion, ...]:
+    """Find columns whose numbers look like another unit than their name says.
+
+    Parameters
+    ----------
+    profile : Profile
+        The aircraft [-]
+    points : Points
+        Its evidence [-]
+    start : Start
+        What is known before [-]
+
+    Returns
+    -------
+    tuple of Suspicion
+        None where everything is as its name says [-]
+    """
+    return suspect_columns(
+        subject_of(profile),
+        points.evidence,
+        points.readings,
+        mean=start.mean,
+        covariance=start.covariance,
+    ).columns
 
 
 def fit_points(profile: Profile, points: Points, start: Start) -> Estimate:
