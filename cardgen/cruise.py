@@ -7,6 +7,7 @@ and the number that is printed therefore cannot differ.
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, fields
 from enum import IntEnum
 from typing import Final
@@ -37,7 +38,7 @@ from cardgen.propeller import (
     slip,
 )
 from cardgen.propeller.table import LEAST_ADVANCE_RATIO
-from cardgen.roots import find_root
+from cardgen.roots import find_root, secant_steps
 
 FloatArray = npt.NDArray[np.float64]
 
@@ -46,6 +47,12 @@ CHUNK: Final = 16384
 
 AIRSPEED_TOLERANCE: Final = 1e-7
 """Largest error of a solved airspeed [m/s]."""
+
+# Where the airspeed is first looked for, over the one that drag alone allows; how many steps are
+# taken from there, and the last step [m/s] after which the error is below the tolerance.
+_SHARE_OF_FASTEST: Final = 0.87
+_SECANT_STEPS: Final = 4
+_SETTLED: Final = 1e-4
 
 
 class CruiseStatus(IntEnum):
@@ -309,7 +316,7 @@ def solve_cruise(aircraft: Aircraft, condition: Condition, *, setting: Setting) 
 
     Notes
     -----
-    The airspeed is bracketed between the speed of least power in level flight (or the lift
+    The airspeed lies between the speed of least power in level flight (or the lift
     ceiling, if faster) and the speed at which drag alone would take all the power.
     """
     problem = _problem(aircraft, condition, setting)
@@ -379,6 +386,36 @@ def _brackets(
     return np.asarray(lower), np.asarray(np.maximum(upper, lower))
 
 
+def _fast_root(
+    surplus: Callable[..., FloatArray],
+    lower: FloatArray,
+    upper: FloatArray,
+    values: tuple[FloatArray, ...],
+) -> FloatArray:
+    """Airspeed at which the surplus of thrust vanishes, NaN where it does not [m/s]."""
+    shape = np.broadcast_shapes(lower.shape, upper.shape, *(item.shape for item in values))
+    low, high = (np.broadcast_to(end, shape) for end in (lower, upper))
+    guess = np.maximum(_SHARE_OF_FASTEST * high, low)
+    root, step = secant_steps(
+        lambda airspeed: surplus(airspeed, *values),
+        guess,
+        0.98 * guess,
+        lower=low,
+        upper=high,
+        steps=_SECANT_STEPS,
+    )
+    settled = (surplus(low, *values) > 0.0) & (step < _SETTLED) & (root > low) & (root < high)
+    if settled.all():
+        return root
+    rest = ~settled
+    picked = (np.broadcast_to(item, shape)[rest] for item in values)
+    root = np.array(root)
+    root[rest] = find_root(
+        surplus, low[rest], high[rest], arguments=tuple(picked), tolerance=AIRSPEED_TOLERANCE
+    )
+    return root
+
+
 def _solve_chunk(
     aircraft: Aircraft, lower: FloatArray, upper: FloatArray, *values: FloatArray
 ) -> CruisePoint:
@@ -388,7 +425,7 @@ def _solve_chunk(
     def surplus(airspeed: FloatArray, *numbers: FloatArray) -> FloatArray:
         return _residual(table, _rebuilt(numbers), airspeed)
 
-    root = find_root(surplus, lower, upper, arguments=values, tolerance=AIRSPEED_TOLERANCE)
+    root = _fast_root(surplus, lower, upper, values)
     point = _outputs(aircraft, _rebuilt(values), root)
     unsolved = np.isnan(root)
     if unsolved.any():
