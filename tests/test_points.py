@@ -168,7 +168,7 @@ def test_every_problem_is_told_with_its_place_in_one_run(tmp_path: Path) -> None
         "points.csv:3:6: oat_c: 'x' is not a number, "
         "expected a number without its unit, or an empty cell",
         "points.csv:4:1: rpm: is missing, expected a number in every row",
-        "points.csv:5:24: fuel_flow_gph: '12,1' is not a number, "
+        "points.csv:5:22: fuel_flow_gph: '12,1' is not a number, "
         "expected a number without its unit, and a decimal point, or an empty cell",
         "points.csv:6:18: percent_power: 650 is not possible, expected 1 to 120",
         "points.csv:6:36: mixture: 'Best' is no mixture of specimen.yaml, "
