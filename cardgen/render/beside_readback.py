@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 from itertools import pairwise
 
 from cardgen.errors import ReleaseError
@@ -19,6 +20,7 @@ from cardgen.tables.card import Card, CellState
 _NEAR = 1.0  # slack for positions [pt]
 
 
+@lru_cache(maxsize=4096)
 def squeezed(text: str) -> str:
     """Return the text without spaces, so that line breaks do not count."""
     return "".join(printable(text).split())

@@ -7,6 +7,9 @@ from dataclasses import dataclass
 from functools import lru_cache
 from typing import Final
 
+import numpy as np
+import numpy.typing as npt
+
 from cardgen.render.edition import Edition
 from cardgen.render.fonts import Face, width
 from cardgen.render.wording import (
@@ -20,6 +23,8 @@ from cardgen.render.wording import (
     temperature_label,
 )
 from cardgen.tables.card import Card, CardTable
+
+IndexArray = npt.NDArray[np.intp]
 
 LEADING: Final = 1.25  # least distance of baselines over the size
 NOTE: Final = 9.0  # least size of notes [pt]
@@ -72,6 +77,13 @@ class Part:
         """The altitudes in order, each once."""
         return tuple(dict.fromkeys(altitude for altitude, _ in self.rows))
 
+    @property
+    def cells(self) -> tuple[IndexArray, IndexArray, IndexArray]:
+        """Altitude, temperature and rpm indices of all cells, whichever way temperatures run."""
+        rows, columns = np.array(self.rows), np.array(self.columns)
+        temperature = np.maximum(np.maximum(rows[:, 1:], columns[:, 0]), 0)
+        return rows[:, :1], temperature, columns[:, 1]
+
 
 @dataclass(frozen=True, slots=True)
 class Columns:
@@ -97,9 +109,9 @@ class Columns:
         return self.column_width >= self.content_width + 2.0 * self.style.pad
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Grid:
-    """A part of a table in a style."""
+    """A part of a table in a style; compared and hashed by identity."""
 
     card: Card
     table: CardTable

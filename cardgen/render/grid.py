@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from functools import lru_cache
 from itertools import groupby
 from typing import Final
 
@@ -75,14 +76,20 @@ def _group_height(grid: Grid) -> float:
 def row_height(grid: Grid, row: tuple[int, int]) -> float:
     """Return the height of one row [pt]: higher where a full-throttle mark needs its own line."""
     height = grid.style.lead * (2.0 if grid.style.stacked else 1.0) + 2.5
-    if not grid.columns.mark_inline and any(
-        grid.table.state[cell_index(row, column)] == CellState.FULL_THROTTLE
-        for column in grid.part.columns
-    ):
+    if row in _marked(grid):
         height += LEADING * grid.style.figure
     if grid.columns.seconds_below:
         height += LEADING * NOTE
     return height
+
+
+@lru_cache(maxsize=128)
+def _marked(grid: Grid) -> frozenset[tuple[int, int]]:
+    """Return the rows in which a full-throttle mark needs a line of its own."""
+    if grid.columns.mark_inline:
+        return frozenset()
+    full = (grid.table.state[grid.part.cells] == CellState.FULL_THROTTLE).any(axis=1)
+    return frozenset(row for row, marked in zip(grid.part.rows, full, strict=True) if marked)
 
 
 def grid_height(grid: Grid, continued: str) -> float:

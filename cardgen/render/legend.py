@@ -6,7 +6,7 @@ from collections.abc import Iterable, Sequence
 from functools import cache
 
 from cardgen.render.boxes import Box, Frame, Run
-from cardgen.render.columns import FRAME_PAD, LEADING, NOTE, Part, cell_index
+from cardgen.render.columns import FRAME_PAD, LEADING, NOTE, Part
 from cardgen.render.fonts import CAP_HEIGHT, width, wrap
 from cardgen.render.wording import FULL_THROTTLE, legend
 from cardgen.tables.card import Card, CellState
@@ -16,14 +16,14 @@ Meaning = tuple[str, tuple[str, ...]]  # a mark and the lines that say what it m
 
 def _states(card: Card, parts: Sequence[Part]) -> set[tuple[CellState, int]]:
     """Return state and reason of every cell of the parts."""
-    found = set()
+    found: set[tuple[int, int]] = set()
     for part in parts:
-        table = card.tables[part.table]
-        for row in part.rows:
-            for column in part.columns:
-                at = cell_index(row, column)
-                found.add((CellState(int(table.state[at])), int(table.reason[at])))
-    return found
+        table, at = card.tables[part.table], part.cells
+        pairs = zip(
+            table.state[at].ravel().tolist(), table.reason[at].ravel().tolist(), strict=True
+        )
+        found |= set(pairs)
+    return {(CellState(int(state)), int(reason)) for state, reason in found}
 
 
 def legend_lines(card: Card, parts: Sequence[Part], measure: float) -> tuple[Meaning, ...]:

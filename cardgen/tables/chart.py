@@ -61,7 +61,7 @@ class Charted:
     solution : Solution
         Settings at those pressures [-]
     ceiling : Solution
-        Full throttle; shape (rpm, altitude, 1) [-]
+        Full throttle, and the least power drawn; shape (rpm, altitude, 2) [-]
     findings : Findings
         What the limits say of the settings [-]
     """
@@ -104,19 +104,16 @@ def charted(model: Model, choices: CardChoices, *, mixture: int) -> Charted:
         mixture=mixture,
     )
     rpm = np.array(choices.rpm)[:, None, None]
-    ceiling = solve(
-        model, situation, indicated_rpm=rpm, power_fraction=_BEYOND, with_tolerance=False
-    )
-    floor = solve(
+    least = min(choices.power_fraction) - 0.5 * _POWER_STEP / 100.0
+    ends = solve(
         model,
         situation,
         indicated_rpm=rpm,
-        power_fraction=min(choices.power_fraction) - 0.5 * _POWER_STEP / 100.0,
+        power_fraction=np.array([_BEYOND, least]),  # full throttle, and where lines begin
         with_tolerance=False,
     )
     _, fine = _PRESSURE_STEPS[units.pressure]
-    low, _ = _span(to_unit(floor.indicated_manifold_pressure, units.pressure))
-    _, high = _span(to_unit(ceiling.indicated_manifold_pressure, units.pressure))
+    low, high = _span(to_unit(ends.indicated_manifold_pressure, units.pressure))
     pressure = fine * np.arange(np.floor(low / fine), np.ceil(high / fine) + 1.0)
     solution = solve(
         model,
@@ -130,7 +127,7 @@ def charted(model: Model, choices: CardChoices, *, mixture: int) -> Charted:
         altitude=np.asarray(to_unit(altitude, units.altitude)),
         pressure=pressure,
         solution=solution,
-        ceiling=ceiling,
+        ceiling=ends,
         findings=_within_reach(judge(model, solution, units=message_units(units)), solution),
     )
 
