@@ -20,8 +20,8 @@ sys.path.insert(0, str(ROOT / "tests"))
 from many_profiles import write_profiles  # noqa: E402 - found by the line above
 
 LEAST_RATIO = 1.6  # on two cores
-ROUND, ROUNDS = 20, 4
-WATCHED = 40  # aircraft from which memory is watched
+ROUND, ROUNDS = 40, 3
+WATCHED = 50  # aircraft from which memory is watched
 
 
 def make(folder: Path, out: str, count: int, *, one_core: bool = False) -> tuple[float, float]:
