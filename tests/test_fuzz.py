@@ -8,6 +8,8 @@ import shutil
 from pathlib import Path
 
 import pytest
+from fuzz.campaign import campaign
+from fuzz.cases import KINDS
 
 from cardgen.aircraft import Condition, Setting
 from cardgen.cli.main import run
@@ -196,3 +198,32 @@ def test_too_little_memory_is_told(
 
     monkeypatch.setattr("cardgen.tables.rows.rows", greedy)
     refused(capsys, ["table", str(demo), "--csv"], code=3, because="memory: there is not enough")
+
+
+CASES = {
+    "profile text": 300,
+    "profile structure": 300,
+    "profile numbers": 60,
+    "points": 25,
+    "settings": 250,
+    "fit file": 250,
+    "history": 250,
+    "options": 320,
+}
+"""Few enough for every run of the suite; `python -m tests.fuzz` takes as many as one likes."""
+
+
+def test_every_kind_of_case_is_tried() -> None:
+    """A kind that is added is not forgotten here."""
+    assert set(CASES) == set(KINDS)
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_damaged_input_ends_in_an_answer_or_a_reason(kind: str) -> None:
+    """No traceback, no hang, no number from bad input, no file touched that is not named."""
+    tally = campaign(kind, seed=0, cases=CASES[kind])
+    assert tally.objections == []
+    assert tally.count == CASES[kind]
+    # Not everything is refused, and not everything passes.
+    assert tally.codes[0] + tally.codes[1] > CASES[kind] // 20
+    assert tally.codes[2] + tally.codes[3] > CASES[kind] // 20
