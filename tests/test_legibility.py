@@ -6,16 +6,22 @@ cockpit documents, no single source.
 
 from __future__ import annotations
 
+import shutil
+import subprocess
 from io import BytesIO
 from itertools import pairwise
+from pathlib import Path
 
+import numpy as np
 import pytest
 from card_factory import Sketch
 from pypdf import PdfReader
 from test_render_pdf import RANDOM_CARDS, edition_of, pdf_of, random_sketch
 
+from cardgen.render.boxes import Hatch, Tint
 from cardgen.render.edition import Edition
 from cardgen.render.fonts import Face, width
+from cardgen.render.layout import lay_out
 from cardgen.render.paper import FOLD, PAPERS, find_paper
 from cardgen.render.wording import SUPPLEMENTARY, cell_texts
 from cardgen.render.words import Word, read_words
@@ -35,6 +41,8 @@ EXTREMES = (
     Sketch(altitudes=12, rpm=6, temperatures=3, kind="pressure", tables=1, metric=True, reasons=3),
     Sketch(altitudes=8, rpm=1, temperatures=3, kind="pressure"),
     Sketch(altitudes=1, rpm=1, tables=1, reasons=0, stamps=False),
+    Sketch(altitudes=12, rpm=6, tables=4, long=True, reasons=3, back=True),
+    Sketch(altitudes=12, rpm=6, tables=2, metric=True, reasons=2, back=True, second=True),
 )
 
 
@@ -177,3 +185,63 @@ def test_nothing_is_set_in_colour() -> None:
     pdf = pdf_of(edition_of(Sketch()), compress=False)
     operators = {line.split()[-1] for line in pdf.split(b"\n") if line.strip()}
     assert not operators & {b"rg", b"RG", b"k", b"K", b"sc", b"SC", b"scn", b"SCN"}
+
+
+# ------------------------------------------------------------------------------- pixels of the page
+
+DOTS = 150  # per inch
+PDFTOPPM = shutil.which("pdftoppm")
+
+
+def pixels(pdf: bytes, folder: Path, page: int) -> np.ndarray:
+    """Return red, green and blue of a page, 0 to 255; shape (rows, columns, 3)."""
+    file = folder / "page.pdf"
+    file.write_bytes(pdf)
+    place = ["-f", str(page), "-l", str(page), "-singlefile", "-r", str(DOTS)]
+    subprocess.run([str(PDFTOPPM), *place, str(file), str(folder / "page")], check=True, timeout=60)
+    data = (folder / "page.ppm").read_bytes()
+    _, size, _, raw = data.split(b"\n", 3)
+    wide, high = map(int, size.split())
+    return np.frombuffer(raw, np.uint8).reshape(high, wide, 3)
+
+
+def within(image: np.ndarray, box: Hatch | Tint, height: float) -> np.ndarray:
+    """Return the part of a page's image that a box covers, a point in from its edges."""
+    scale = DOTS / 72.0
+    top, bottom = height - box.y - box.height, height - box.y
+    rows = slice(int((top + 1.0) * scale), int((bottom - 1.0) * scale))
+    return image[rows, int((box.x + 1.0) * scale) : int((box.x + box.width - 1.0) * scale)]
+
+
+@pytest.mark.skipif(PDFTOPPM is None, reason="no pdftoppm on this machine")
+@pytest.mark.parametrize("seed", [3, 5, 8])
+def test_hatching_and_figures_survive_a_photocopy_and_a_red_lamp(seed: int, tmp_path: Path) -> None:
+    """A copy knows black and white alone, and a red lamp shows the red channel alone: forbidden
+    cells stay hatched, the grey of bands goes, and figures stay."""
+    edition = edition_of(Sketch(altitudes=8, rpm=4, tables=1, reasons=3, seed=seed))
+    page = lay_out(edition, find_paper("half-letter"))[0]
+    image = pixels(pdf_of(edition, paper="half-letter"), tmp_path, 1)
+    assert (image[..., 0] == image[..., 1]).all()  # no colour at all
+    assert (image[..., 0] == image[..., 2]).all()
+    red = image[..., 0]
+    hatched = [box for box in page.boxes if isinstance(box, Hatch)]
+    bands = [box for box in page.boxes if isinstance(box, Tint) and 0.5 < box.grey < 1.0]
+    assert hatched
+    assert bands
+    for threshold in (90, 128, 190):  # a light copy, a fair one, a dark one
+        for box in hatched:
+            black = (within(red, box, page.height) < threshold).mean()
+            assert 0.05 < black < 0.6, threshold
+    for box in bands:
+        ground = np.median(within(red, box, page.height))
+        assert ground > 190
+
+
+def test_ink_is_black_and_ground_nearly_white() -> None:
+    """WCAG 2.1 asks 7:1 of text at its strictest (success criterion 1.4.6): here at least 15:1."""
+    sketch = Sketch(altitudes=8, rpm=4, tables=2, reasons=3, back=True)
+    for page in lay_out(edition_of(sketch), find_paper("half-letter")):
+        greys = {box.grey for box in page.boxes if isinstance(box, Tint)}
+        for grey in greys:
+            linear = ((grey + 0.055) / 1.055) ** 2.4  # sRGB, IEC 61966-2-1
+            assert (linear + 0.05) / 0.05 >= 15.0

@@ -44,14 +44,17 @@ def find_text(words: Sequence[Word], text: str, start: int = 0) -> int | None:
         Index of the word after its first occurrence [-]
     """
     wanted = squeezed(text)
-    for first in range(start, len(words)):
-        found, k = "", first
-        while k < len(words) and len(found) < len(wanted) and wanted.startswith(found):
-            found += squeezed(words[k].text)
-            k += 1
-        if found == wanted:
-            return k
-    return None
+    ends = (_text_at(words, wanted, first) for first in range(start, len(words)))
+    return next((end for end in ends if end is not None), None)
+
+
+def _text_at(words: Sequence[Word], wanted: str, first: int) -> int | None:
+    """Return the index after a text that begins at a word, None where another does."""
+    found, k = "", first
+    while k < len(words) and len(found) < len(wanted) and wanted.startswith(found):
+        found += squeezed(words[k].text)
+        k += 1
+    return k if found == wanted else None
 
 
 def cell_is_right(printed: str, cell: Cell) -> bool:
@@ -328,9 +331,12 @@ def read_chart(
         raise ReleaseError(f"read-back: {place}, {chart.title}: does not say how to read it")
     seen: set[int] = set()
     for index, panel in enumerate(chart.panels):
-        start = find_text(words, panel.name + chart.up.label, at)
+        named = panel.name + chart.up.label
+        start = find_text(words, named, at)
         if start is not None:
             name = f"read-back: {place}, {chart.title}, {panel.name}"
+            if seen and _text_at(words, squeezed(named), at) is None:
+                raise ReleaseError(f"{name}: {words[at].text!r} stands before it")
             at = _read_panel(_Panel(words, start, card, chart, panel, name))
             seen.add(index)
     if seen and (at >= len(words) or words[at].text != printable(chart.across.label)):

@@ -234,8 +234,10 @@ def _panel(
         if rays and curve.kind == "setting":
             weight = _SPEED_WEIGHT
         pieces_of_line = tuple(_clipped_line(place, curve))
-        boxes += [Trace(points, weight) for points in pieces_of_line]
-        words += _word(place, curve, pieces_of_line, taken, rays=rays)
+        word = _word(place, curve, pieces_of_line, taken, rays=rays)
+        if word or curve.kind == "ceiling":  # a line that says nothing would only mislead
+            boxes += [Trace(points, weight) for points in pieces_of_line]
+            words += word
     boxes.append(Frame(place.x, place.y, place.width, place.height, 0.8))
     return [*boxes, *words, *_figures(place)]
 
