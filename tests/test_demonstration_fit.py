@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -14,11 +15,14 @@ from cardgen.constants import FOOT, HOUR, INCH_OF_MERCURY, POUND
 from cardgen.limits.gauges import true_manifold_pressure
 from cardgen.profile import load_profile
 from cardgen.profile.assembly import model_of
+from cardgen.profile.card_content import card_of
 from cardgen.profile.fit_file import fit_path, learned_for
 from cardgen.profile.fit_record import read_fit
 from cardgen.profile.fitting import fit_points, start_of
 from cardgen.profile.points import read_points
+from cardgen.tables.card import CardTable, CellState
 from cardgen.tables.solution import Situation, solve
+from cardgen.tables.verdict import judge, status_words
 
 AIRCRAFT = Path(__file__).parents[1] / "profiles" / "aircraft" / "specimen.yaml"
 
@@ -97,3 +101,25 @@ def test_the_demonstration_card_has_tolerances_one_can_fly_with(quantity: int, m
         tolerance.true_airspeed / KNOT,
     )[quantity]
     assert found.max() < most
+
+
+def test_beyond_the_handbook_table_and_card_say_so() -> None:
+    """The handbook ends at 44 % power: 40 % is told as outside the evidence, 55 % is not."""
+    profile = load_profile(AIRCRAFT)
+    learned = learned_for(profile)
+    model = model_of(profile, learned)
+    height = np.array([8000.0]) * FOOT
+    situation = Situation(height, standard_temperature(height), 2800.0 * POUND, 0)
+    words = [
+        status_words(judge(model, solved), solved)
+        for share in (0.40, 0.55)
+        for solved in (solve(model, situation, indicated_rpm=2350.0, power_fraction=share),)
+    ]
+    assert words == [["evidence"], ["ok"]]
+    few = replace(profile.card, power_fraction=(0.40, 0.55))
+    card = card_of(replace(profile, card=few), learned)
+
+    def marked(table: CardTable) -> bool:
+        return bool((table.state == CellState.OUTSIDE_EVIDENCE).any())
+
+    assert all(marked(table) == (table.power_fraction < 0.5) for table in card.tables)

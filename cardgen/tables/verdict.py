@@ -200,9 +200,12 @@ def status_words(findings: Findings, solution: Solution) -> list[str]:
     -------
     list of str
         One for each setting: the solver's word where it has no answer, else the first limit that is
-        broken, else `ok` [-]
+        broken, else `evidence` where the evidence does not reach, else `ok` [-]
     """
     words = np.full(findings.shape, "ok", dtype=object)
+    for judgement in findings.judgements:
+        if judgement.limit == "evidence":
+            words[judgement.verdict != Verdict.INSIDE] = judgement.limit
     for judgement in reversed(findings.judgements):
         words[judgement.verdict == Verdict.OUTSIDE] = judgement.limit
     for status in (CruiseStatus.NO_LEVEL_FLIGHT, CruiseStatus.OUTSIDE_MODEL):
