@@ -6,17 +6,22 @@ import csv
 import json
 import re
 import shutil
+import struct
 import subprocess
+import zlib
 from dataclasses import replace
 from html.parser import HTMLParser
 from io import StringIO
 from pathlib import Path
 
+import numpy as np
+import numpy.typing as npt
 import pytest
 from card_factory import Sketch, make_card
 from test_render_pdf import RANDOM_CARDS, edition_of, pdf_of, random_sketch, with_cell
 
 from cardgen.errors import ReleaseError
+from cardgen.render.beside import listings
 from cardgen.render.data import content_digest, to_csv, to_json
 from cardgen.render.html import to_html
 from cardgen.render.html_readback import read_back_html
@@ -25,7 +30,14 @@ from cardgen.render.words import page_texts
 from cardgen.tables.card import CellState
 
 WIDEST = Sketch(
-    altitudes=12, rpm=6, temperatures=3, kind="pressure", tables=2, metric=True, long=True
+    altitudes=12,
+    rpm=6,
+    temperatures=3,
+    kind="pressure",
+    tables=2,
+    metric=True,
+    long=True,
+    back=True,
 )
 CHROMIUM = shutil.which("chromium")
 
@@ -86,7 +98,7 @@ def test_forbidden_cell_never_shows_its_number_on_the_screen() -> None:
 
 def test_html_needs_nothing_outside_itself() -> None:
     page = to_html(edition_of(WIDEST)).decode()
-    assert not re.search(r"https?:|//[a-z]|url\(|@import|<link|<img|<iframe|\ssrc=", page)
+    assert not re.search(r"https?:|//[a-z]|url\((?!#)|@import|<link|<img|<iframe|\ssrc=", page)
     assert "default-src 'none'" in page.replace("&#x27;", "'")
 
 
@@ -124,7 +136,8 @@ class _Tables(HTMLParser):
 def test_tables_can_be_read_aloud() -> None:
     reader = _Tables()
     reader.feed(to_html(edition_of(WIDEST)).decode())
-    assert reader.tables == reader.captions == 2
+    edition = edition_of(WIDEST)
+    assert reader.tables == reader.captions == 2 + len(listings(edition.card))
     assert reader.bare_heads == 0
 
 
@@ -155,7 +168,7 @@ document.title = JSON.stringify({
 
 @pytest.mark.skipif(CHROMIUM is None, reason="no browser on this machine")
 @pytest.mark.parametrize(("width", "height"), [(768, 1024), (1024, 768)])
-@pytest.mark.parametrize("sketch", [Sketch(), WIDEST])
+@pytest.mark.parametrize("sketch", [Sketch(), WIDEST, Sketch(back=True, second=True)])
 def test_screen_holds_the_card_without_overflow_and_looks_cells_up(
     tmp_path: Path, sketch: Sketch, width: int, height: int
 ) -> None:
@@ -193,6 +206,148 @@ def test_screen_holds_the_card_without_overflow_and_looks_cells_up(
             assert text.startswith(f"{table.manifold_pressure[a, 0, 0]:g}")
         else:
             assert not re.match(r"\d", text)
+
+
+_LOOK = """<script>
+const seen = (box) => getComputedStyle(box);
+const light = (text) => {
+  const part = text.match(/[0-9.]+/g).map(Number);
+  const linear = part.slice(0, 3).map((v) => v / 255).map(
+    (v) => (v <= 0.04045 ? v / 12.92 : ((v + 0.055) / 1.055) ** 2.4));
+  return 0.2126 * linear[0] + 0.7152 * linear[1] + 0.0722 * linear[2];
+};
+const ground = (box) => {
+  for (let at = box; at; at = at.parentElement) {
+    const fill = seen(at).backgroundColor;
+    if (fill !== "rgba(0, 0, 0, 0)" && fill !== "transparent") return fill;
+  }
+  return "rgb(255, 255, 255)";
+};
+const least = () => Math.min(...Array.from(
+  document.querySelectorAll(
+    "td, th, p, dd, dt, li, caption, figcaption, h1, h2, label, text, output")
+).filter((box) => box.textContent.trim()).map((box) => {
+  const ink = box.tagName === "text" ? seen(box).fill : seen(box).color;
+  const [low, high] = [light(ink), light(ground(box))].sort((a, b) => a - b);
+  return (high + 0.05) / (low + 0.05);
+}));
+const contrast = {};
+for (const name of ["day", "night"]) {
+  document.getElementById(name).click();
+  contrast[name] = least();
+}
+const named = (box) => Boolean(
+  box.getAttribute("aria-label") || (box.labels && box.labels.length) || box.textContent.trim());
+document.title = JSON.stringify({
+  contrast: contrast,
+  unnamed: Array.from(document.querySelectorAll("input, select, svg, [role=region]"))
+    .filter((box) => !named(box)).length,
+  captions: Array.from(document.querySelectorAll("table")).filter((t) => !t.caption).length,
+  fetched: performance.getEntriesByType("resource").length,
+});
+</script></body>"""
+
+
+def browsed(
+    page: str, folder: Path, *options: str, size: str = "768,1024"
+) -> subprocess.CompletedProcess[str]:
+    """Open a page in a browser without a window and without a network."""
+    path = folder / "card.html"
+    path.write_text(page, encoding="utf-8")
+    return subprocess.run(
+        [
+            str(CHROMIUM),
+            "--headless",
+            "--no-sandbox",
+            "--disable-gpu",
+            "--enable-logging=stderr",
+            "--host-resolver-rules=MAP * ~NOTFOUND",
+            f"--user-data-dir={folder / 'browser'}",
+            f"--window-size={size}",
+            *options,
+            path.as_uri(),
+        ],
+        capture_output=True,
+        text=True,
+        check=True,
+        timeout=60,
+    )
+
+
+@pytest.mark.skipif(CHROMIUM is None, reason="no browser on this machine")
+def test_screen_is_legible_named_silent_and_needs_no_network(tmp_path: Path) -> None:
+    """WCAG 2.1 asks 7:1 of text at its strictest (success criterion 1.4.6), by day and by night;
+    every control and drawing has a name (4.1.2)."""
+    page = to_html(edition_of(WIDEST)).decode()
+    done = browsed(page.replace("</body>", _LOOK), tmp_path, "--dump-dom")
+    title = re.search(r"<title>(.*?)</title>", done.stdout, re.DOTALL)
+    assert title is not None
+    found = json.loads(title[1].replace("&quot;", '"'))
+    assert found["contrast"]["day"] >= 7.0
+    assert found["contrast"]["night"] >= 7.0
+    assert (found["unnamed"], found["captions"], found["fetched"]) == (0, 0, 0)
+    assert "CONSOLE" not in done.stderr, done.stderr
+
+
+@pytest.mark.skipif(CHROMIUM is None, reason="no browser on this machine")
+def test_night_is_dark_and_day_is_bright_on_the_screen(tmp_path: Path) -> None:
+    """Read from screenshots: the share of light that the whole screen gives."""
+    page = (
+        to_html(edition_of(Sketch(back=True))).decode().replace(' id="auto" checked', ' id="auto"')
+    )
+    light = {}
+    for name in ("day", "night"):
+        chosen = page.replace(f' id="{name}"', f' id="{name}" checked')
+        browsed(chosen, tmp_path, f"--screenshot={tmp_path / 'shot.png'}", size="300,200")
+        light[name] = _brightness((tmp_path / "shot.png").read_bytes())
+    assert light["day"] > 0.7
+    assert light["night"] < 0.15
+
+
+def _brightness(png: bytes) -> float:
+    """Return the mean of all colour values of a PNG of 8 bits, 0 to 1 (PNG, ISO/IEC 15948)."""
+    wide, high, _, kind = struct.unpack(">IIBB", png[16:26])
+    channels = {2: 3, 6: 4}[kind]
+    at, data = 8, b""
+    while at < len(png):
+        (length,) = struct.unpack(">I", png[at : at + 4])
+        if png[at + 4 : at + 8] == b"IDAT":
+            data += png[at + 8 : at + 8 + length]
+        at += 12 + length
+    raw = np.frombuffer(zlib.decompress(data), np.uint8).reshape(high, 1 + wide * channels)
+    rows = np.zeros((high, wide, channels), np.uint8)
+    before = np.zeros((wide, channels), np.uint8)
+    for k in range(high):
+        rows[k] = before = _unfiltered(int(raw[k, 0]), raw[k, 1:].reshape(wide, channels), before)
+    return float(rows[..., :3].mean()) / 255.0
+
+
+def _unfiltered(
+    kind: int, line: npt.NDArray[np.uint8], above: npt.NDArray[np.uint8]
+) -> npt.NDArray[np.uint8]:
+    """Return one line of a PNG with its filter undone."""
+    if kind == 0:
+        return line
+    if kind == 1:
+        return np.cumsum(line, axis=0, dtype=np.uint8)
+    if kind == 2:
+        return line + above
+    out = np.zeros_like(line)
+    left = corner = np.zeros(line.shape[1], np.int16)
+    for x in range(line.shape[0]):
+        up = above[x].astype(np.int16)
+        if kind == 3:
+            guess = (left + up) // 2
+        else:
+            near = np.abs(np.stack([up - corner, left - corner, left + up - 2 * corner]))
+            guess = np.where(
+                (near[0] <= near[1]) & (near[0] <= near[2]),
+                left,
+                np.where(near[1] <= near[2], up, corner),
+            )
+        out[x] = (line[x] + guess) % 256
+        left, corner = out[x].astype(np.int16), up
+    return out
 
 
 def test_csv_and_json_carry_the_numbers_of_the_page() -> None:
