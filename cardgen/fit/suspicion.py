@@ -54,7 +54,7 @@ _MODEL: Final = (0.2 * INCH_OF_MERCURY, 0.2 * 6.0 * POUND / HOUR, 2.0 * KNOT)
 # What no light piston aeroplane's numbers lie outside of; common practice, no source.
 _AIRSPEED: Final = (50.0 * KNOT, 350.0 * KNOT)
 _CONSUMPTION: Final = (0.28 * POUND / HORSEPOWER / HOUR, 0.95 * POUND / HORSEPOWER / HOUR)
-_LEAST_SHARE: Final = 0.25  # manifold pressure over ambient
+_LEAST_SHARE: Final = 0.35  # manifold pressure over ambient
 _MOST_RAM: Final = 6.0e3  # manifold pressure over ambient, without a compressor [Pa]
 _WEATHER: Final = 15.0  # deviation of a set of temperatures from standard [K]
 _MOST_WEATHER: Final = 45.0  # [K]
@@ -249,6 +249,8 @@ class _Judge:
         rows = evidence.rows(few)
         deviations = _allowed(rows)
         values = self._found(rows, deviations)
+        if np.isnan(values).any():
+            return None  # the fit itself will name the row that has no answer
         step = difference_step(self.subject.mixtures, self.covariance)
         slope = slopes(self.subject, rows, values=values, step=step)
         cost = self._cost(rows, values, deviations)
@@ -275,14 +277,18 @@ class _Judge:
     def _found(
         self, evidence: Evidence, deviations: FloatArray, *, near: FloatArray | None = None
     ) -> FloatArray:
-        """Return the parameters that explain evidence best."""
+        """Return the parameters that explain evidence best, NaN where none do at all."""
+        start = self.mean if near is None else near
+        said = predict_continued(self.subject, evidence, values=start)
+        if (np.isnan(said) & ~np.isnan(evidence.read())).any():
+            return np.full_like(start, np.nan)
         return most_likely(
             self.subject,
             evidence,
             deviations=deviations,
             mean=self.mean,
             covariance=self.covariance,
-            near=self.mean if near is None else near,
+            near=start,
         )
 
     def _scaled(
@@ -320,7 +326,9 @@ class _Judge:
         return values + change, float(left @ left + away @ away)
 
     def _cost(self, evidence: Evidence, values: FloatArray, deviations: FloatArray) -> float:
-        """Return misfit and distance from the prior, in squared deviations."""
+        """Return misfit and distance from the prior in squared deviations, infinite without fit."""
+        if np.isnan(values).any():
+            return np.inf
         error = predict_continued(self.subject, evidence, values=values) - evidence.read()
         bent = robust((error / deviations)[~np.isnan(error)])
         away = self.whiten @ (values - self.mean)
