@@ -243,3 +243,27 @@ def test_thermometer_rise_is_that_of_the_recovery_formula() -> None:
     fastest = max(float(np.nanmax(one.true_airspeed)) for one in card.tables)
     speed = float(from_unit(fastest, "kt"))
     assert table.rise == pytest.approx(0.8 * speed**2 / (2.0 * 1004.7), rel=1e-3)
+
+
+def test_best_settings_state_how_far_they_may_be_off() -> None:
+    """As wide as the tolerance of any printed setting, computed here one by one."""
+    model, card = demonstration()
+    table = card.back.best[0]
+    settings = table.settings[0]
+    worst = 0.0
+    for i, altitude in enumerate(card.choices.altitude):
+        one = solve(
+            model,
+            situation_of(
+                np.array(altitude),
+                np.zeros(1),
+                by_density=True,
+                mass=np.array(table.mass),
+                mixture=0,
+            ),
+            indicated_rpm=settings.rpm[i],
+            indicated_pressure=pressure_from(settings.manifold_pressure[i : i + 1], "inHg"),
+        )
+        assert one.tolerance is not None
+        worst = max(worst, float(to_unit(one.tolerance.true_airspeed, "kt")[0]))
+    assert settings.tolerance[2] == pytest.approx(worst, rel=1e-6)

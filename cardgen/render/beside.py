@@ -133,17 +133,9 @@ def _hours(minutes: float, *, mark: str = "") -> Cell:
 
 
 def _rows(card: Card, table: RowTable) -> Listing:
-    units, places = card.choices.units, card.decimals
+    units = card.choices.units
     degrees, feet = sign(units.temperature), sign(units.altitude)
-    errors = [
-        f"{number(step_up(value, count), count)} {sign(unit)}"
-        for value, count, unit in zip(
-            table.error,
-            (places.pressure, places.fuel_flow, places.speed),
-            (units.pressure, units.fuel_flow, units.speed),
-            strict=True,
-        )
-    ]
+    errors = _amounts(card, table.error)
     lead = [
         f"The row ({altitude_label(card)}) of the tables at a pressure altitude (PA) and outside "
         "air temperature (OAT). Take the nearest PA and OAT; nothing is read between.",
@@ -277,6 +269,7 @@ def _best(card: Card, tables: Sequence[BestTable]) -> Listing:
             f"Of all settings within limits and evidence, {number(RPM_STEP)} rpm and "
             f"{number(100.0 * POWER_STEP)} % apart: farthest and longest on the fuel, in still air "
             "of standard temperature.",
+            _tolerance(card, shown),
         ),
         label=altitude_label(card),
         groups=tuple(groups),
@@ -290,6 +283,28 @@ def _best(card: Card, tables: Sequence[BestTable]) -> Listing:
             (OUT_OF_REACH, "No setting searched is allowed."),
         ),
     )
+
+
+def _tolerance(card: Card, settings: Sequence[BestSettings]) -> str:
+    """Return the largest tolerance of some settings in words."""
+    if any(table.tolerance is None for table in card.tables):
+        return "Tolerance: not known (model not fitted)."
+    largest = [max(column) for column in zip(*(one.tolerance for one in settings), strict=True)]
+    return f"95 % tolerance ±{', ±'.join(_amounts(card, largest))}."
+
+
+def _amounts(card: Card, values: Sequence[float]) -> list[str]:
+    """Return pressure, fuel flow and speed, rounded up, with their units."""
+    units, places = card.choices.units, card.decimals
+    return [
+        f"{number(step_up(value, count), count)} {sign(unit)}"
+        for value, count, unit in zip(
+            values,
+            (places.pressure, places.fuel_flow, places.speed),
+            (units.pressure, units.fuel_flow, units.speed),
+            strict=True,
+        )
+    ]
 
 
 def _one_and_the_same(settings: Sequence[BestSettings]) -> bool:

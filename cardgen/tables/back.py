@@ -117,6 +117,8 @@ class BestSettings:
         Distance in still air on one unit of fuel, rounded down [-]
     at_edge : ndarray of bool, shape (rows,)
         Whether less power, where the evidence ends, could do better [-]
+    tolerance : tuple of float
+        95 %, largest of all rows: manifold pressure, fuel flow, speed in the card's units [-]
     """
 
     aim: Literal["range", "endurance"]
@@ -126,6 +128,7 @@ class BestSettings:
     true_airspeed: FloatArray
     distance_per_fuel: FloatArray
     at_edge: BoolArray
+    tolerance: tuple[float, float, float] = (0.0, 0.0, 0.0)
 
 
 @dataclass(frozen=True, slots=True)

@@ -10,7 +10,7 @@ import numpy.typing as npt
 
 from cardgen.limits import Findings, Verdict
 from cardgen.tables.back import BestSettings, BestTable
-from cardgen.tables.choices import CardChoices
+from cardgen.tables.choices import CardChoices, UnitSet
 from cardgen.tables.printed import (
     decimals,
     fuel_flow_in,
@@ -226,7 +226,32 @@ def _printed(
         true_airspeed=where_shown(speed),
         distance_per_fuel=where_shown(rounded_down(speed / flow, per_fuel_places(units.fuel_flow))),
         at_edge=at_edge & shown,
+        tolerance=_tolerance(model, units, solved, shown),
     )
+
+
+def _tolerance(
+    model: Model, units: UnitSet, solved: Solution, shown: BoolArray
+) -> tuple[float, float, float]:
+    """Largest 95 % tolerance of pressure, fuel flow and speed of printed settings."""
+    exact = solve(
+        model,
+        solved.situation,
+        indicated_rpm=solved.indicated_rpm,
+        indicated_pressure=solved.indicated_manifold_pressure,
+    ).tolerance
+    if exact is None:
+        raise AssertionError("tolerances were asked for")
+    density = model.subject.aircraft.engine.fuel_density
+    pressure, flow, speed = (
+        float(np.max(values[shown], initial=0.0))
+        for values in (
+            np.asarray(to_unit(exact.manifold_pressure, units.pressure)),
+            fuel_flow_in(exact.fuel_flow, units.fuel_flow, fuel_density=density),
+            np.asarray(to_unit(exact.true_airspeed, units.speed)),
+        )
+    )
+    return pressure, flow, speed
 
 
 def per_fuel_places(flow_unit: str) -> int:
@@ -269,4 +294,5 @@ def _of_mass(settings: BestSettings, k: int) -> BestSettings:
         settings.true_airspeed[k],
         settings.distance_per_fuel[k],
         settings.at_edge[k],
+        settings.tolerance,
     )
