@@ -9,6 +9,7 @@ import subprocess
 import sys
 from dataclasses import replace
 from io import BytesIO
+from itertools import pairwise
 from typing import Any
 
 import numpy as np
@@ -19,14 +20,16 @@ from reportlab.pdfbase import pdfmetrics
 from reportlab.pdfbase.ttfonts import TTFont
 
 from cardgen.errors import ReleaseError, UsageError
+from cardgen.render.beside import listings
 from cardgen.render.edition import Edition
 from cardgen.render.fonts import FACES, printable, width, wrap
 from cardgen.render.html import to_html
 from cardgen.render.html_readback import read_back_html
-from cardgen.render.paper import PAPERS, find_paper
+from cardgen.render.paper import FOLD, PAPERS, find_paper
 from cardgen.render.produce import produce
 from cardgen.render.readback import read_back
 from cardgen.render.typesetting import typeset
+from cardgen.render.wording import cell_texts
 from cardgen.render.words import page_texts, read_words
 from cardgen.tables.card import Card, CellState, Reason, Section
 
@@ -420,3 +423,134 @@ def test_importing_the_package_loads_no_pdf_library() -> None:
         [sys.executable, "-c", code], capture_output=True, text=True, check=True, env=env
     )
     assert done.stdout.strip() == "[]"
+
+
+def sheets_of(pdf: bytes) -> list[tuple[float, float]]:
+    """Return width and height of every sheet of a file [pt]."""
+    boxes = (sheet.mediabox for sheet in PdfReader(BytesIO(pdf)).pages)
+    return [(float(box.width), float(box.height)) for box in boxes]
+
+
+def test_fronts_carry_tables_and_backs_what_stands_beside_them() -> None:
+    edition = edition_of(Sketch(altitudes=8, rpm=4, tables=4, back=True))
+    titles = [printable(listing.title) for listing in listings(edition.card)]
+    titles += [chart.title for chart in edition.card.back.charts]
+    texts = page_texts(pdf_of(edition))
+    tables = [k for k, text in enumerate(texts) if "\nMixture: " in text]
+    backs = [k for k, text in enumerate(texts) if any(title in text for title in titles)]
+    assert tables == list(range(0, 2 * len(tables), 2))
+    assert backs[: len(tables)] == list(range(1, 2 * len(tables), 2))[: len(backs)]
+
+
+def test_every_listing_and_chart_is_on_the_card_and_says_where_it_goes_on() -> None:
+    edition = edition_of(Sketch(altitudes=12, rpm=6, tables=2, back=True, long=True))
+    for paper in PAPERS:
+        texts = page_texts(pdf_of(edition, paper=paper))
+        for listing in listings(edition.card):
+            words = "".join(printable(listing.title).split())
+            pages = [k for k, text in enumerate(texts, start=1) if words in "".join(text.split())]
+            assert pages
+            for here, after in pairwise(pages):
+                assert f"Continued on page {after}." in texts[here - 1].replace("\n", " ")
+                assert f"Continued from page {here}." in texts[after - 1].replace("\n", " ")
+
+
+@pytest.mark.parametrize(
+    ("name", "value"),
+    [("minutes", 5.0), ("distance", 5.0)],
+)
+def test_page_of_another_range_is_caught(name: str, value: float) -> None:
+    edition = edition_of(Sketch(reasons=0, back=True))
+    table = edition.card.back.ranges[0]
+    array = getattr(table, name).copy()
+    array[1] += value
+    ranges = (replace(table, **{name: array}), *edition.card.back.ranges[1:])
+    other = replace(edition.card, back=replace(edition.card.back, ranges=ranges))
+    for file, check in (
+        (pdf_of(replace(edition, card=other)), read_back),
+        (to_html(replace(edition, card=other)), read_back_html),
+    ):
+        with pytest.raises(ReleaseError, match="Range and endurance"):
+            check(file, edition)
+
+
+def test_page_of_another_row_or_best_setting_is_caught() -> None:
+    edition = edition_of(Sketch(reasons=0, back=True))
+    back = edition.card.back
+    assert back.rows is not None
+    row = np.where(np.isnan(back.rows.row), 0.0, back.rows.row + 2000.0)
+    best = back.best[0]
+    settings = replace(best.settings[0], rpm=best.settings[0].rpm + 50.0)
+    for changed, words in (
+        (replace(back, rows=replace(back.rows, row=row)), "Which row"),
+        (
+            replace(
+                back, best=(replace(best, settings=(settings, *best.settings[1:])), *back.best[1:])
+            ),
+            "Best settings",
+        ),
+    ):
+        other = replace(edition, card=replace(edition.card, back=changed))
+        with pytest.raises(ReleaseError, match=words):
+            read_back(pdf_of(other), edition)
+
+
+def test_rpm_of_one_row_stay_together_on_the_broad_side_where_upright_parts_them() -> None:
+    sketch = Sketch(altitudes=1, rpm=6, tables=1, reasons=0, stamps=False)
+    edition = edition_of(sketch)
+    pdf = pdf_of(edition, paper="a6")
+    (wide, high), *_ = sheets_of(pdf)
+    assert wide > high
+    read_back(pdf, edition)
+    upright = sheets_of(pdf_of(edition_of(replace(sketch, rpm=3)), paper="a6"))
+    assert all(w < h for w, h in upright)
+    assert all(w < h for w, h in sheets_of(pdf_of(edition, paper="half-letter")))
+
+
+def test_sheet_of_two_says_where_to_fold() -> None:
+    for paper in ("a4", "letter"):
+        pages = page_texts(pdf_of(edition_of(Sketch(back=True)), paper=paper))
+        assert all(FOLD in page for page in pages[::2])
+        assert not any(FOLD in page for page in pages[1::2])
+
+
+def test_second_units_stand_below_in_small_type_and_are_read_back() -> None:
+    """Reference: 1 inHg = 33.8639 hPa, 1 US gallon = 3.785412 L (NIST SP 811), worked out here."""
+    edition = edition_of(Sketch(reasons=0, tables=1, second=True))
+    pdf = pdf_of(edition)
+    words = [word for page in read_words(pdf) for word in page]
+    table = edition.card.tables[0]
+    texts = [word.text for word in words]
+    cell = list(cell_texts(edition.card, table, (1, 0, 2)))
+    at = next(k for k in range(len(texts)) if texts[k : k + 3] == cell)
+    pressure, flow, speed = words[at + 3 : at + 6]
+    assert float(pressure.text) == round(float(table.manifold_pressure[1, 0, 2]) * 33.8639)
+    assert 0.0 <= float(flow.text) - float(table.fuel_flow[1, 0, 2]) * 3.785412 < 1.0
+    assert 0.0 <= float(table.true_airspeed[1, 0, 2]) * 1.852 - float(speed.text) < 1.0
+    assert {word.size for word in (pressure, flow, speed)} == {9.0}
+    read_back(pdf, edition)
+    other = edition_of(Sketch(reasons=0, tables=1))
+    with pytest.raises(ReleaseError):
+        read_back(pdf, other)
+
+
+def test_numbers_are_never_parted_from_their_units() -> None:
+    text = "limits widened by ±10 rpm, 24.0 inHg and 115 °F below it, see section 2.5, revision C"
+    for measure in range(40, 200, 3):
+        for line in wrap(text, "regular", size=9.0, measure=float(measure)):
+            assert not re.match(r"(rpm|inHg|°F|2\.5|C$)", line)
+
+
+def test_words_of_ours_are_set_with_true_signs() -> None:
+    edition = edition_of(Sketch())
+    card = replace(
+        edition.card,
+        notes=("Between -40 and 5 °C, part X-20 is as before.",),
+        tables=tuple(
+            replace(t, mixture_basis="115 degF rich of peak") for t in edition.card.tables
+        ),
+    )
+    text = "\n".join(page_texts(pdf_of(replace(edition, card=card))))
+    assert "115 °F rich of peak" in text
+    assert "degF" not in text
+    assert "\N{MINUS SIGN}40 and 5 °C, part X-20" in text
