@@ -272,7 +272,10 @@ class Reader:
         )
         match cell.state:
             case CellState.OUT_OF_REACH:
-                if not every(math.isnan(flying.power) for flying in flown):
+                # Where only one step flies and that one breaks a limit, there is nothing to set.
+                unsolved = [math.isnan(flying.power) for flying in flown]
+                why = [self.broken(cell.rpm, flying, -CERTAIN) for flying in flown]
+                if not any(unsolved) or not (cell.full or all(why)):
                     yield "out of reach, but flies"
             case CellState.FORBIDDEN:
                 why = [self.broken(cell.rpm, flying, -CERTAIN) for flying in flown]
