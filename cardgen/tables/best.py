@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
-from typing import Final, Literal
+from typing import Any, Final, Literal
 
 import numpy as np
 import numpy.typing as npt
@@ -26,7 +27,7 @@ from cardgen.units import to_unit
 
 FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
-Aim = Literal["range", "endurance"]
+AIMS: Final[tuple[Literal["range", "endurance"], ...]] = ("range", "endurance")
 
 RPM_STEP: Final = 50.0
 """Between the rpm searched: what a tachometer is set to."""
@@ -82,6 +83,10 @@ def _grid(model: Model, choices: CardChoices) -> tuple[FloatArray, FloatArray]:
         low, high = min(low, covers.rpm[0]), max(high, covers.rpm[1])
     rpm = np.arange(np.floor(low / RPM_STEP), np.ceil(high / RPM_STEP) + 1.0) * RPM_STEP
     least, most = LEAST_POWER, max(choices.power_fraction)
+    if covers is not None:
+        # One step below the evidence shows that its edge is what ends the search.
+        lowest = covers.power[0] / model.percent_of.power - POWER_STEP
+        least = max(least, POWER_STEP * math.floor(lowest / POWER_STEP - 1.0))
     if choices.break_in is not None:
         least = max(least, choices.break_in.least_power_fraction)
     return rpm, np.arange(least, most + 0.5 * POWER_STEP, POWER_STEP)
@@ -127,26 +132,16 @@ def _mixture(model: Model, choices: CardChoices, mixture: int) -> list[BestTable
     """Best settings with one mixture."""
     search = _search(model, choices, mixture)
     point = search.solution.point
-    merit: dict[Aim, FloatArray] = {
-        "range": point.true_airspeed / point.fuel_flow,
-        "endurance": 1.0 / point.fuel_flow,
-    }
+    # For every aim, mass and altitude the best of all rpm and powers.
+    merit = np.stack([point.true_airspeed / point.fuel_flow, 1.0 / point.fuel_flow])
+    shape = (*merit.shape[:3], -1)
+    place = np.argmax(np.where(search.allowed, merit, -np.inf).reshape(shape), axis=-1)
     units = choices.units
-    found = []
-    for aim, values in merit.items():
-        shape = (*values.shape[:2], -1)
-        ranked = np.where(search.allowed, values, -np.inf).reshape(shape)
-        place = np.argmax(ranked, axis=-1)
-        none = np.asarray(~search.allowed.reshape(shape).any(axis=-1))
-        found.append((aim, place, none, _lower_barred(search, place)))
     altitude = tuple(
         float(value)
         for value in np.round(np.asarray(to_unit(np.array(choices.altitude), units.altitude)), 6)
     )
-    settings = [
-        _printed(model, choices, search, aim=aim, place=place, none=none, at_edge=edge)
-        for aim, place, none, edge in found
-    ]
+    settings = _printed(model, choices, search, place)
     return [
         BestTable(
             mixture=model.subject.mixtures[mixture].name,
@@ -158,43 +153,30 @@ def _mixture(model: Model, choices: CardChoices, mixture: int) -> list[BestTable
     ]
 
 
+def _at(values: npt.NDArray[Any], place: npt.NDArray[np.intp]) -> npt.NDArray[Any]:
+    """Values of shape (mass, altitude, rpm, power) at places of shape (aim, mass, altitude)."""
+    flat = np.broadcast_to(values.reshape(*values.shape[:2], -1), (*place.shape, values[0, 0].size))
+    return np.take_along_axis(flat, place[..., None], axis=-1)[..., 0]
+
+
 def _lower_barred(search: _Search, place: npt.NDArray[np.intp]) -> BoolArray:
     """Whether the next lower power at the same rpm was solved but not allowed, or not searched."""
-    powers = search.allowed.shape[-1]
-    shape = (*search.allowed.shape[:2], -1)
-    allowed = search.allowed.reshape(shape)
-    solved = ~np.isnan(search.solution.point.power.reshape(shape))
-    lower = np.maximum(place - 1, 0)[..., None]
-    first = place % powers == 0
-    barred = ~np.take_along_axis(allowed, lower, axis=-1)[..., 0]
-    flies = np.take_along_axis(solved, lower, axis=-1)[..., 0]
-    return np.asarray(first | (barred & flies))
+    lower = np.maximum(place - 1, 0)
+    first = place % search.allowed.shape[-1] == 0
+    flies = ~np.isnan(_at(search.solution.point.power, lower))
+    return np.asarray(first | (~_at(search.allowed, lower) & flies))
 
 
 def _printed(
-    model: Model,
-    choices: CardChoices,
-    search: _Search,
-    *,
-    aim: Aim,
-    place: npt.NDArray[np.intp],
-    none: BoolArray,
-    at_edge: BoolArray,
-) -> BestSettings:
-    """The best settings as printed; arrays of shape (mass, altitude)."""
+    model: Model, choices: CardChoices, search: _Search, place: npt.NDArray[np.intp]
+) -> list[BestSettings]:
+    """The best settings as printed, for each aim with arrays of shape (mass, altitude)."""
     units, places = choices.units, decimals(choices.units)
-    shape = (*search.allowed.shape[:2], -1)
-
-    def at_best(values: FloatArray) -> FloatArray:
-        return np.take_along_axis(values.reshape(shape), place[..., None], axis=-1)[..., 0]
-
     exact = search.solution
-    rpm = at_best(exact.indicated_rpm)
-    reads = np.asarray(to_unit(at_best(exact.indicated_manifold_pressure), units.pressure))
+    found = _at(search.allowed, place)
+    rpm = _at(exact.indicated_rpm, place)
+    reads = np.asarray(to_unit(_at(exact.indicated_manifold_pressure, place), units.pressure))
     nearest = rounded(reads, places.pressure)
-    other = np.where(
-        nearest > reads, rounded_down(reads, places.pressure), rounded_up(reads, places.pressure)
-    )
     situation = exact.situation
     flat = Situation(
         pressure_altitude=np.asarray(situation.pressure_altitude)[..., 0, 0],
@@ -203,52 +185,51 @@ def _printed(
         mixture=situation.mixture,
     )
     solved, allowed = _judged(model, flat, rpm=rpm, printed=nearest, unit=units.pressure)
-    swap = ~allowed & ~none
-    if swap.any():
-        nearest = np.where(swap, other, nearest)
+    swap = ~allowed & found
+    if swap.any():  # the step to the other side of what was computed
+        up, down = rounded_up(reads, places.pressure), rounded_down(reads, places.pressure)
+        nearest = np.where(swap, np.where(nearest > reads, down, up), nearest)
         solved, allowed = _judged(model, flat, rpm=rpm, printed=nearest, unit=units.pressure)
-    shown = allowed & ~none
+    shown = allowed & found
     density = model.subject.aircraft.engine.fuel_density
     flow = rounded_up(
         fuel_flow_in(solved.point.fuel_flow, units.fuel_flow, fuel_density=density),
         places.fuel_flow,
     )
     speed = rounded_down(np.asarray(to_unit(solved.point.true_airspeed, units.speed)), places.speed)
-
-    def where_shown(values: FloatArray) -> FloatArray:
-        return np.where(shown, values, np.nan)
-
-    return BestSettings(
-        aim=aim,
-        rpm=where_shown(rpm),
-        manifold_pressure=where_shown(nearest),
-        fuel_flow=where_shown(flow),
-        true_airspeed=where_shown(speed),
-        distance_per_fuel=where_shown(rounded_down(speed / flow, per_fuel_places(units.fuel_flow))),
-        at_edge=at_edge & shown,
-        tolerance=_tolerance(model, units, solved, shown),
+    reach = rounded_down(speed / flow, per_fuel_places(units.fuel_flow))
+    edge = _lower_barred(search, place) & shown
+    rpm, nearest, flow, speed, reach = (
+        np.where(shown, values, np.nan) for values in (rpm, nearest, flow, speed, reach)
     )
+    return [
+        BestSettings(
+            aim=aim,
+            rpm=rpm[k],
+            manifold_pressure=nearest[k],
+            fuel_flow=flow[k],
+            true_airspeed=speed[k],
+            distance_per_fuel=reach[k],
+            at_edge=edge[k],
+            tolerance=_tolerance(solved, k, shown, units=units, fuel_density=density),
+        )
+        for k, aim in enumerate(AIMS)
+    ]
 
 
 def _tolerance(
-    model: Model, units: UnitSet, solved: Solution, shown: BoolArray
+    solved: Solution, aim: int, shown: BoolArray, *, units: UnitSet, fuel_density: float
 ) -> tuple[float, float, float]:
-    """Largest 95 % tolerance of pressure, fuel flow and speed of printed settings."""
-    exact = solve(
-        model,
-        solved.situation,
-        indicated_rpm=solved.indicated_rpm,
-        indicated_pressure=solved.indicated_manifold_pressure,
-    ).tolerance
-    if exact is None:
+    """Largest 95 % tolerance of pressure, fuel flow and speed of the settings for one aim."""
+    spread = solved.tolerance
+    if spread is None:
         raise AssertionError("tolerances were asked for")
-    density = model.subject.aircraft.engine.fuel_density
     pressure, flow, speed = (
-        float(np.max(values[shown], initial=0.0))
+        float(np.max(values[aim][shown[aim]], initial=0.0))
         for values in (
-            np.asarray(to_unit(exact.manifold_pressure, units.pressure)),
-            fuel_flow_in(exact.fuel_flow, units.fuel_flow, fuel_density=density),
-            np.asarray(to_unit(exact.true_airspeed, units.speed)),
+            np.asarray(to_unit(spread.manifold_pressure, units.pressure)),
+            fuel_flow_in(spread.fuel_flow, units.fuel_flow, fuel_density=fuel_density),
+            np.asarray(to_unit(spread.true_airspeed, units.speed)),
         )
     )
     return pressure, flow, speed
@@ -279,7 +260,6 @@ def _judged(
         situation,
         indicated_rpm=rpm,
         indicated_pressure=pressure_from(printed, unit),
-        with_tolerance=False,
     )
     return solution, _allowed(model, solution, judge(model, solution))
 
