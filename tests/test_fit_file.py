@@ -169,6 +169,9 @@ def test_flights_after_a_change_are_fitted_on_top_of_what_is_still_true(tree: Pa
     assert learned.knowledge.fitted == ("engine", "mixtures", "propeller", "airframe")
     assert record.earlier is not None
     assert len(record.earlier.rows) == 5
+    assert record.knowledge.covers is not None
+    # Flown at 2300 by the tachometer, printed to 2500: what both cover together.
+    assert record.knowledge.covers.rpm == pytest.approx((2309.3, 2500.0), abs=0.1)
     assert "An earlier fit to 5 rows went before" in learned.note
 
 

@@ -51,6 +51,25 @@ def _bounds(mixtures: Sequence[Mixture]) -> tuple[FloatArray, FloatArray]:
     return lower, np.array([parameter.upper for parameter in listed])
 
 
+def within_bounds(mixtures: Sequence[Mixture], values: FloatArray) -> FloatArray:
+    """Parameters moved to where they have a physical meaning.
+
+    Parameters
+    ----------
+    mixtures : sequence of Mixture
+        The mixtures of the profile [-]
+    values : ndarray, shape (p,)
+        Parameters [-]
+
+    Returns
+    -------
+    ndarray, shape (p,)
+        The nearest that are inside their bounds [-]
+    """
+    lower, upper = _bounds(mixtures)
+    return np.asarray(np.clip(values, lower + 1e-9, upper - 1e-9))
+
+
 def most_likely(
     subject: Subject,
     evidence: Evidence,
@@ -111,7 +130,7 @@ def most_likely(
 
         found = least_squares(
             residuals,
-            np.clip(start, lower + 1e-9, upper - 1e-9),
+            within_bounds(subject.mixtures, start),
             jac=jacobian,
             bounds=(lower, upper),
             x_scale=np.sqrt(np.diag(covariance)),

@@ -26,7 +26,7 @@ from cardgen.fit.loss import robust
 from cardgen.fit.model import Subject, predict_continued, slopes
 from cardgen.fit.parameters import parameters
 from cardgen.fit.rereading import AIRSPEEDS, alternatives, reread, scale_of
-from cardgen.fit.search import difference_step, most_likely
+from cardgen.fit.search import difference_step, most_likely, within_bounds
 from cardgen.units import Unit
 
 FloatArray = npt.NDArray[np.float64]
@@ -278,7 +278,7 @@ class _Judge:
         self, evidence: Evidence, deviations: FloatArray, *, near: FloatArray | None = None
     ) -> FloatArray:
         """Return the parameters that explain evidence best, NaN where none do at all."""
-        start = self.mean if near is None else near
+        start = within_bounds(self.subject.mixtures, self.mean if near is None else near)
         said = predict_continued(self.subject, evidence, values=start)
         if (np.isnan(said) & ~np.isnan(evidence.read())).any():
             return np.full_like(start, np.nan)

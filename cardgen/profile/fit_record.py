@@ -40,11 +40,14 @@ class Earlier:
         Their covariance [-]
     rows : tuple of str
         Digests of its rows [-]
+    covers : EvidenceRange
+        Ranges of its rows [-]
     """
 
     values: FloatArray
     covariance: FloatArray
     rows: tuple[str, ...]
+    covers: EvidenceRange
 
 
 @dataclass(frozen=True, slots=True)
@@ -230,7 +233,8 @@ def _earlier(file: ProfileFile[Any], section: EarlierSection, size: int) -> Earl
     covariance = _covariance(file, section.covariance, size, at=("earlier", "covariance"))
     if covariance is None:
         return None
-    return Earlier(np.array(section.values), covariance, tuple(section.rows))
+    covers = _range(section.covers)
+    return Earlier(np.array(section.values), covariance, tuple(section.rows), covers)
 
 
 def _range(section: CoversSection) -> EvidenceRange:
@@ -297,7 +301,8 @@ def fit_text(record: FitRecord) -> str:
     lines.append("warnings:" if record.warnings else "warnings: []")
     lines += [f"  - {_word(warning[:600])}" for warning in record.warnings]
     if record.earlier is not None:
-        lines += ["earlier:", f"  rows: {_words(record.earlier.rows)}"]
+        lines += ["earlier:", f"  rows: {_words(record.earlier.rows)}", "  covers:"]
+        lines += _ranges(record.earlier.covers, indent="    ")
         lines += [f"  values: {_numbers(record.earlier.values)}", "  covariance:"]
         lines += _matrix(record.earlier.covariance, indent="    ")
     return "\n".join(lines) + "\n"

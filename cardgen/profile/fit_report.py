@@ -14,7 +14,6 @@ from cardgen.fit import (
     PARTS,
     Estimate,
     carried_over,
-    knowledge_from_fit,
     parameters,
     standard_deviations,
 )
@@ -23,7 +22,7 @@ from cardgen.fit.suspicion import Suspicion
 from cardgen.profile.assembly import model_of, subject_of
 from cardgen.profile.document import Profile
 from cardgen.profile.fit_words import parameter_words, sign_of, suspicion_text
-from cardgen.profile.fitting import Start
+from cardgen.profile.fitting import Start, knowledge_of
 from cardgen.profile.points import Points
 from cardgen.tables.flights import FlightPlan, points_to_fly
 from cardgen.tables.printed import decimals, fuel_flow_in, unit_sign
@@ -98,7 +97,7 @@ def report_of(
     """
     subject = subject_of(profile)
     knowledge = carried_over(
-        subject, knowledge_from_fit(subject, points.evidence, found), unchanged=PARTS
+        subject, knowledge_of(profile, points, start, found=found), unchanged=PARTS
     )
     return FitReport(
         profile,

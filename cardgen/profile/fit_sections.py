@@ -94,6 +94,7 @@ class EarlierSection(Section):
     """What an earlier fit, whose rows were not given again, had told before."""
 
     rows: list[Digest] = Field(max_length=MOST_ROWS, description="Digest of every row of it")
+    covers: CoversSection = Field(description="Ranges of its rows")
     values: Row = Field(description="Parameters, in the order of `parameters`")
     covariance: Matrix = Field(description="Covariance of them")
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
@@ -10,6 +10,8 @@ import numpy.typing as npt
 
 from cardgen.fit import (
     Estimate,
+    EvidenceRange,
+    Knowledge,
     carried_over,
     estimate,
     knowledge_from_fit,
@@ -114,7 +116,9 @@ def _carried(profile: Profile, record: FitRecord, found: Match, changed: str) ->
     )
     rows = (*(record.earlier.rows if record.earlier else ()), *record.rows)
     note = _STARTS.format(len(rows)) + f" Replaced since: {changed}; back at data-sheet values."
-    return Start(kept.values, kept.covariance, Earlier(kept.values, kept.covariance, rows), (note,))
+    assert record.knowledge.covers is not None  # a fit file states it
+    earlier = Earlier(kept.values, kept.covariance, rows, record.knowledge.covers)
+    return Start(kept.values, kept.covariance, earlier, (note,))
 
 
 _STARTS: Final = "Starts from an earlier fit to {} rows, not given here."
@@ -168,6 +172,42 @@ def fit_points(profile: Profile, points: Points, start: Start) -> Estimate:
     )
 
 
+def knowledge_of(profile: Profile, points: Points, start: Start, *, found: Estimate) -> Knowledge:
+    """Return what is known after a fit.
+
+    Parameters
+    ----------
+    profile : Profile
+        The aircraft [-]
+    points : Points
+        Its evidence [-]
+    start : Start
+        What was known before [-]
+    found : Estimate
+        What was found [-]
+
+    Returns
+    -------
+    Knowledge
+        It covers what the points cover and what an earlier fit covered that it starts from: the
+        parts that are still the same were seen there [-]
+    """
+    knowledge = knowledge_from_fit(subject_of(profile), points.evidence, found)
+    if start.earlier is None or knowledge.covers is None:
+        return knowledge
+    return replace(knowledge, covers=_both(start.earlier.covers, knowledge.covers))
+
+
+def _both(one: EvidenceRange, other: EvidenceRange) -> EvidenceRange:
+    """Return the ranges that hold two."""
+
+    def ends(name: str) -> tuple[float, float]:
+        (low, high), (least, greatest) = getattr(one, name), getattr(other, name)
+        return min(low, least), max(high, greatest)
+
+    return EvidenceRange(ends("pressure"), ends("temperature"), ends("rpm"), ends("power"))
+
+
 def record_of(
     profile: Profile,
     points: Points,
@@ -198,7 +238,7 @@ def record_of(
     """
     return FitRecord(
         aircraft=profile.name,
-        knowledge=knowledge_from_fit(subject_of(profile), points.evidence, found),
+        knowledge=knowledge_of(profile, points, start, found=found),
         prior=found.prior,
         prior_deviation=found.prior_deviation,
         parts=part_digests(profile),
