@@ -275,9 +275,15 @@ def _cut_block(
     greedy: list[Part] = []
     start = 0
     while start < len(groups):
-        end = start
-        while end < len(groups) and _fits(edition, room, style, (part(start, end + 1),)):
-            end += 1
+        # More rows never need less room, so the most that fit are found by halving.
+        end, beyond = start, len(groups) + 1
+        trial = len(groups)
+        while beyond - end > 1:
+            if _fits(edition, room, style, (part(start, trial),)):
+                end = trial
+            else:
+                beyond = trial
+            trial = (end + beyond) // 2
         if end == start:
             return None
         greedy.append(part(start, end))
