@@ -77,19 +77,18 @@ def draw(pages: Sequence[Page], metadata: Metadata, *, compress: bool = True) ->
 
 
 def _draw_box(canvas: Canvas, box: Box) -> None:
+    """Draw one box; a page begins with black ink and every box leaves it so."""
     if isinstance(box, Run):
-        canvas.setFillGray(0.0)
         canvas.setFont(_NAMES[box.face], box.size)
         canvas.drawString(box.x, box.y, box.text)
     elif isinstance(box, Rule):
-        canvas.setStrokeGray(0.0)
         canvas.setLineWidth(box.thickness)
         canvas.line(box.x, box.y, box.to_x, box.to_y)
     elif isinstance(box, Tint):
         canvas.setFillGray(box.grey)
         canvas.rect(box.x, box.y, box.width, box.height, stroke=0, fill=1)
+        canvas.setFillGray(0.0)
     elif isinstance(box, Frame):
-        canvas.setStrokeGray(0.0)
         canvas.setLineWidth(box.thickness)
         canvas.rect(box.x, box.y, box.width, box.height, stroke=1, fill=0)
     elif isinstance(box, Trace):
@@ -102,7 +101,6 @@ def _draw_box(canvas: Canvas, box: Box) -> None:
 
 def _draw_trace(canvas: Canvas, box: Trace) -> None:
     canvas.saveState()
-    canvas.setStrokeGray(0.0)
     canvas.setLineWidth(box.thickness)
     canvas.setLineJoin(1)
     if box.dash:
@@ -113,7 +111,6 @@ def _draw_trace(canvas: Canvas, box: Trace) -> None:
 
 def _draw_ground(canvas: Canvas, box: Ground) -> None:
     canvas.saveState()
-    canvas.setStrokeGray(0.0)
     canvas.setLineWidth(box.thickness)
     canvas.clipPath(_path(canvas, box.pieces, closed=True), stroke=0, fill=0)
     lines = [((x, y), (to_x, to_y)) for x, y, to_x, to_y in hatching(box)]
@@ -136,7 +133,6 @@ def _path(
 
 def _draw_hatch(canvas: Canvas, box: Hatch) -> None:
     canvas.saveState()
-    canvas.setStrokeGray(0.0)
     canvas.setLineWidth(box.thickness)
     path = canvas.beginPath()
     path.rect(box.x, box.y, box.width, box.height)
