@@ -267,3 +267,15 @@ def test_best_settings_state_how_far_they_may_be_off() -> None:
         assert one.tolerance is not None
         worst = max(worst, float(to_unit(one.tolerance.true_airspeed, "kt")[0]))
     assert settings.tolerance[2] == pytest.approx(worst, rel=1e-6)
+
+
+def test_a_single_row_is_taken_within_half_a_step_of_it() -> None:
+    card = make_card(Sketch(altitudes=1))
+    choices = replace(card.choices, altitude=(6000.0 * 0.3048,))
+    tables = tuple(replace(table, altitude=(6000.0,)) for table in card.tables)
+    table = row_table(choices, tables)
+    assert table is not None
+    known = np.isfinite(table.row)
+    assert known.any()
+    assert not known.all()
+    assert set(table.row[known]) == {6000.0}
