@@ -6,6 +6,7 @@ import math
 from dataclasses import replace
 from functools import cache
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 import pytest
@@ -22,7 +23,6 @@ from cardgen.tables.printed import pressure_from
 from cardgen.tables.range import DISTANCE_STEP, MINUTE_STEP, fuel_in, range_tables
 from cardgen.tables.rows import situation_of
 from cardgen.tables.solution import Model, solve
-from cardgen.tables.temperature import row_table
 from cardgen.tables.verdict import judge
 from cardgen.units import from_unit, to_unit
 
@@ -229,15 +229,20 @@ def test_row_rises_with_altitude_and_with_temperature() -> None:
         assert (change[np.isfinite(change)] >= 0.0).all()
 
 
+def with_choices(**changed: Any) -> Card:
+    """The demonstration card with other choices."""
+    profile = load_profile(PROFILE)
+    return card_of(replace(profile, card=replace(profile.card, **changed)))
+
+
 def test_card_by_pressure_altitude_needs_no_row_table() -> None:
-    card = make_card(Sketch(kind="pressure", temperatures=3))
-    assert row_table(card.choices, card.tables) is None
+    assert with_choices(altitude_kind="pressure").back.rows is None
 
 
 def test_thermometer_rise_is_that_of_the_recovery_formula() -> None:
     """Reference: T_r = T (1 + r (γ − 1)/2 M²), with r = 0.8 at 160 kt about 2.7 °C."""
     _, card = demonstration()
-    table = row_table(card.choices, card.tables, recovery=0.8)
+    table = card.back.rows
     assert table is not None
     assert table.rise is not None
     fastest = max(float(np.nanmax(one.true_airspeed)) for one in card.tables)
@@ -270,10 +275,7 @@ def test_best_settings_state_how_far_they_may_be_off() -> None:
 
 
 def test_a_single_row_is_taken_within_half_a_step_of_it() -> None:
-    card = make_card(Sketch(altitudes=1))
-    choices = replace(card.choices, altitude=(6000.0 * 0.3048,))
-    tables = tuple(replace(table, altitude=(6000.0,)) for table in card.tables)
-    table = row_table(choices, tables)
+    table = with_choices(altitude=(6000.0 * 0.3048,)).back.rows
     assert table is not None
     known = np.isfinite(table.row)
     assert known.any()

@@ -18,8 +18,7 @@ from cardgen.atmosphere import (
 from cardgen.tables.back import RowTable
 from cardgen.tables.card import CardTable, CellState
 from cardgen.tables.choices import CardChoices, UnitSet
-from cardgen.tables.printed import decimals, fuel_flow_in, rounded, temperature_step_in
-from cardgen.tables.solution import Model, Situation, solve
+from cardgen.tables.printed import temperature_step_in
 from cardgen.units import from_unit, to_unit
 
 FloatArray = npt.NDArray[np.float64]
@@ -33,18 +32,18 @@ _COLUMNS: Final = {
 
 
 def row_table(
-    model: Model, choices: CardChoices, *, tables: Sequence[CardTable]
+    choices: CardChoices, tables: Sequence[CardTable], *, recovery: float | None = None
 ) -> RowTable | None:
-    """The rows of a card by pressure altitude and temperature, and what they lack there.
+    """The rows of a card by pressure altitude and temperature.
 
     Parameters
     ----------
-    model : Model
-        The aircraft [-]
     choices : CardChoices
         What the card shows [-]
     tables : sequence of CardTable
-        Its finished tables [-]
+        Its finished tables, for what rounding to a row moves [-]
+    recovery : float, optional
+        Recovery factor of the thermometer, None where it is not stated [-]
 
     Returns
     -------
@@ -54,9 +53,7 @@ def row_table(
     Notes
     -----
     A density altitude outside the rows by more than half a step has no row: nothing is carried on
-    beyond the card. Equal density asks for less manifold pressure where air is colder, and for more
-    where it is warmer, than the standard air of the row; the change given is the middle of those
-    that the cells of the row ask for.
+    beyond the card.
     """
     if choices.altitude_kind != "density":
         return None
@@ -75,84 +72,13 @@ def row_table(
         ),
         units.altitude,
     )
-    row = _nearest(rows, np.asarray(found))
-    moved = _moved(
-        model,
-        choices,
-        tables=tables,
-        place=np.where(np.isnan(row), -1, np.searchsorted(rows, np.nan_to_num(row))),
-        pressure_altitude=from_unit(pressure_altitude, units.altitude),
-        temperature=kelvin,
-    )
-    change, error = _middle(moved, decimals(units).pressure)
-    recovery = model.gauges.temperature_recovery
     return RowTable(
         pressure_altitude=tuple(float(value) for value in pressure_altitude),
         temperature=tuple(float(value) for value in temperature),
-        row=row,
-        change=change,
-        error=error,
+        row=_nearest(rows, np.asarray(found), alone=_STEPS[units.altitude][0]),
+        error=_error(tables),
         rise=None if recovery is None else _rise(tables, recovery, units),
     )
-
-
-def _moved(
-    model: Model,
-    choices: CardChoices,
-    *,
-    tables: Sequence[CardTable],
-    place: npt.NDArray[np.intp],
-    pressure_altitude: FloatArray,
-    temperature: FloatArray,
-) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Right less printed pressure, fuel flow and speed, shape (places, temperatures, cells)."""
-    units = choices.units
-    density = model.subject.aircraft.engine.fuel_density
-    changes: tuple[list[FloatArray], ...] = ([], [], [])
-    for table in tables:
-        right = solve(
-            model,
-            Situation(
-                pressure_altitude[:, None, None],
-                temperature[None, :, None],
-                table.mass,
-                model.mixture_index(table.mixture),
-            ),
-            indicated_rpm=np.array(table.rpm),
-            power_fraction=table.power_fraction,
-            with_tolerance=False,
-        )
-        held = (place[..., None] >= 0) & ~right.point.full_throttle
-        held = held & (table.state[place, 0, :] == CellState.VALUE)
-        for found, printed, collected in zip(
-            (
-                to_unit(right.indicated_manifold_pressure, units.pressure),
-                fuel_flow_in(right.point.fuel_flow, units.fuel_flow, fuel_density=density),
-                to_unit(right.point.true_airspeed, units.speed),
-            ),
-            (table.manifold_pressure, table.fuel_flow, table.true_airspeed),
-            changes,
-            strict=True,
-        ):
-            collected.append(np.where(held, found - printed[place, 0, :], np.nan))
-    pressure, flow, speed = (np.concatenate(collected, axis=-1) for collected in changes)
-    return pressure, flow, speed
-
-
-def _middle(
-    moved: tuple[FloatArray, FloatArray, FloatArray], places: int
-) -> tuple[FloatArray, tuple[float, float, float]]:
-    """Printed change of pressure, and what is then still wrong of pressure, flow and speed."""
-    pressure, flow, speed = moved
-    known = ~np.isnan(pressure)
-    least = np.min(np.where(known, pressure, np.inf), axis=-1)
-    greatest = np.max(np.where(known, pressure, -np.inf), axis=-1)
-    answered = known.any(axis=-1)
-    with np.errstate(invalid="ignore"):  # of a place without cells, inf less inf
-        change = np.where(answered, rounded(0.5 * (least + greatest), places) + 0.0, np.nan)
-    left = (pressure - change[..., None], flow, speed)
-    worst = (float(np.nanmax(np.abs(values), initial=0.0)) for values in left)
-    return change, (next(worst), next(worst), next(worst))
 
 
 def _rise(tables: Sequence[CardTable], recovery: float, units: UnitSet) -> float:
@@ -171,17 +97,30 @@ def _rows(unit: str, highest: float) -> FloatArray:
     return np.arange(0.0, highest + 0.5 * step, step)
 
 
-def _nearest(rows: FloatArray, values: FloatArray) -> FloatArray:
+def _nearest(rows: FloatArray, values: FloatArray, *, alone: float) -> FloatArray:
     """Nearest row, the lower of two; NaN farther than half a step outside the rows."""
     edges = 0.5 * (rows[1:] + rows[:-1])
     place = np.searchsorted(edges, values, side="left")
-    below, above = _half_steps(rows)
+    below, above = _half_steps(rows, alone)
     inside = (values >= rows[0] - below) & (values <= rows[-1] + above)
     return np.where(inside, rows[place], np.nan)
 
 
-def _half_steps(rows: FloatArray) -> tuple[float, float]:
-    """Half a step of the rows at either end; of a single row nothing is known, so none."""
+def _half_steps(rows: FloatArray, alone: float) -> tuple[float, float]:
+    """Half a step of the rows at either end; a single row has the step it is given."""
     if rows.size == 1:
-        return 0.0, 0.0
+        return 0.5 * alone, 0.5 * alone
     return 0.5 * float(rows[1] - rows[0]), 0.5 * float(rows[-1] - rows[-2])
+
+
+def _error(tables: Sequence[CardTable]) -> tuple[float, float, float]:
+    """Half the largest change from one row to the next, of pressure, fuel flow and speed."""
+    worst = [0.0, 0.0, 0.0]
+    for table in tables:
+        value = table.state == CellState.VALUE
+        both = value[1:] & value[:-1]
+        arrays = (table.manifold_pressure, table.fuel_flow, table.true_airspeed)
+        for place, array in enumerate(arrays):
+            change = np.abs(np.diff(array, axis=0))[both]
+            worst[place] = max(worst[place], 0.5 * float(np.max(change, initial=0.0)))
+    return worst[0], worst[1], worst[2]
