@@ -41,7 +41,9 @@ def main() -> int:
     pages = page_texts(files["pdf"])
     wanted = {
         "card": f"{100.0 * table.power_fraction:g} %\n{table.mixture}",
-        "back": printable(listings(card)[1].title),
+        "back": next(
+            printable(one.title) for one in listings(card) if one.title.startswith("Range")
+        ),
         "chart": card.back.charts[0].title,
     }
     FOLDER.mkdir(parents=True, exist_ok=True)
