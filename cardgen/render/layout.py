@@ -35,6 +35,7 @@ from cardgen.tables.card import Card, CardTable, Section
 
 SETTING_SIZES: Final = (18.0, 17.0, 16.0, 15.0, 14.0, 13.0, LEAST_SETTING)
 BETWEEN_TABLES: Final = 8.0
+ABOVE_FOOT: Final = 4.0  # left free on a back, so that nothing touches the rule of the foot [pt]
 TABLES_PER_PAGE: Final = 2
 
 # Both say "page 99 of 99" while heights are measured, so that numbering cannot move a line.
@@ -388,7 +389,7 @@ def _mark_back(edition: Edition, room: Room, *, page: int, pages: int) -> Markin
 def _room_on_back(edition: Edition, room: Room) -> float:
     """Return the height a back page has between its head and its foot."""
     marking = _mark_back(edition, room, page=_MANY, pages=_MANY)
-    return room.top - room.bottom - marking.head_height - marking.foot_height
+    return room.top - room.bottom - marking.head_height - marking.foot_height - ABOVE_FOOT
 
 
 def _back_page(edition: Edition, room: Room, contents: Sequence[Content], *, page: int) -> Page:
