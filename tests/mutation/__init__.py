@@ -1,0 +1,1 @@
+"""Small faults put into the program on purpose, to see whether the tests notice."""

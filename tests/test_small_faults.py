@@ -1,0 +1,103 @@
+"""Small things that no other test noticed when they were put wrong on purpose."""
+
+from __future__ import annotations
+
+from dataclasses import fields, replace
+from pathlib import Path
+
+import numpy as np
+import pytest
+from limits_specimen import ALL, BLADES, CONTINUOUS, EXACT, INHG, SHEET, flown, only
+
+from cardgen.aircraft import Condition, Setting
+from cardgen.cruise import CruiseStatus, solve_cruise
+from cardgen.engine import Engine
+from cardgen.limits import GaugeError, Gauges, allowed_nearby, check
+from cardgen.limits.finding import Finding, Findings
+from cardgen.limits.kinds import RestrictedRpm, Source
+from cardgen.limits.statement import state_all
+from cardgen.limits.wording import MessageUnits
+from cardgen.profile import load_profile
+
+DEMO = Path(__file__).parent.parent / "profiles" / "aircraft" / "specimen.yaml"
+BAND = Gauges(
+    GaugeError((0.0,), (0.0,), 30.0, measured=True),
+    GaugeError((0.0,), (0.0,), 0.5 * INHG, measured=True),
+)
+"""Gauges that may be 30 rpm and half an inch off either way."""
+
+
+def one(findings: Findings, limit: str) -> Finding:
+    """Return the only finding of a kind."""
+    (found,) = (finding for finding in findings.at() if finding.limit == limit)
+    return found
+
+
+def test_three_other_settings_are_offered_and_no_more() -> None:
+    """A pilot chooses among three; a fourth is no help on a knee."""
+    found = allowed_nearby(
+        ALL,
+        EXACT,
+        indicated_rpm=2200.0,
+        solve=lambda rpm: flown(indicated_rpm=rpm, solved=np.ones(rpm.shape, dtype=np.bool_)),
+    )
+    assert len(found) == 3
+
+
+def test_excess_over_a_rating_is_told_at_the_greatest_true_value() -> None:
+    """2590 rpm that may be 2620 is 20 rpm above 2600, not 40 below."""
+    found = one(check(only(ratings=(CONTINUOUS,)), BAND, flown(indicated_rpm=2590.0)), "ratings")
+    assert "20 rpm above the 2600 rpm of Maximum continuous" in found.message
+
+
+def test_a_range_by_two_sources_is_noted_as_wide_as_both() -> None:
+    """What the tachometer reads covers the range of either source, widened by its band."""
+    other = replace(BLADES, low_rpm=2000.0, high_rpm=2300.0, source=Source("Another sheet"))
+    findings = check(only(restricted_rpm=(BLADES, other)), BAND, flown())
+    (judgement,) = (j for j in findings.judgements if j.limit == "restricted_rpm")
+    assert judgement.statement.endswith("1970-2380 rpm as the tachometer reads")
+
+
+@pytest.mark.parametrize("condition", ["above_manifold_pressure", "below_manifold_pressure"])
+def test_a_conditional_range_tells_the_manifold_pressure(condition: str) -> None:
+    """Whether it is closed hangs on the pressure, so the pressure is in the message."""
+    closed = replace(BLADES, **{condition: 20.0 * INHG})
+    found = one(check(only(restricted_rpm=(closed,)), EXACT, flown()), "restricted_rpm")
+    assert "23.0 inHg" in found.message
+    plain = one(check(only(restricted_rpm=(BLADES,)), EXACT, flown()), "restricted_rpm")
+    assert "inHg" not in plain.message
+
+
+def test_the_fuel_of_an_engine_weighs_six_pounds_a_gallon_unless_told() -> None:
+    """Common practice, no source: 6.0 lb per US gallon, 719 kg/m³."""
+    (default,) = (field.default for field in fields(Engine) if field.name == "fuel_density")
+    assert default == pytest.approx(6.0 * 0.45359237 / 3.785411784e-3)
+
+
+def test_what_the_propeller_table_does_not_cover_is_no_want_of_power() -> None:
+    """A tip beyond the table is another answer than an aeroplane too heavy to fly."""
+    profile = load_profile(DEMO)
+    setting = Setting(np.array([4500.0, 2400.0]), profile.mixtures[0], power=150e3)
+    air = Condition(8e4, 270.0, np.array([1200.0, 20_000.0]))
+    point = solve_cruise(profile.aircraft, air, setting=setting)
+    assert point.status.tolist() == [CruiseStatus.OUTSIDE_MODEL, CruiseStatus.NO_LEVEL_FLIGHT]
+
+
+def test_two_readings_of_one_limit_are_shown_with_who_states_them() -> None:
+    """Two sections of one document that differ are stated twice, not two sources that disagree."""
+    again = RestrictedRpm("blades", 2100.0, 2360.0, "2100 to 2360", SHEET)
+    text, source = state_all([BLADES, again], MessageUnits())
+    assert text.startswith("stated twice, the most restrictive is applied: ")
+    assert "2100-2350" in text
+    assert "2100-2360" in text
+    assert source == str(SHEET)
+
+
+@pytest.mark.parametrize(("share", "noted"), [(0.70, True), (0.78, False)])
+def test_enriching_is_no_second_reason_where_the_lean_mixture_is_over_itself(
+    share: float, noted: bool
+) -> None:
+    """At 78 % of a 75 % ceiling the ceiling is broken; that a richer mixture would too is noise."""
+    setting = flown(power_fraction=share, power_fraction_at_best_power=0.82)
+    found = [finding.limit for finding in check(ALL, EXACT, setting).at()]
+    assert ("leaning_at_best_power" in found) == noted
