@@ -20,6 +20,7 @@ from cardgen.tables.back import (
 )
 from cardgen.tables.card import CardTable
 from cardgen.tables.choices import CardChoices
+from cardgen.tables.printed import decimals
 from cardgen.tables.range import range_tables
 
 WINDS = (-15.0, -7.5, 0.0, 7.5, 15.0)  # [m/s]
@@ -31,7 +32,9 @@ def make_back(
     rng = random.Random(seed)
     winds = WINDS[rng.randrange(3) :: rng.randint(1, 3)] or (0.0,)
     return Back(
-        rows=_rows(tables[0], rng) if choices.altitude_kind == "density" else None,
+        rows=_rows(tables[0], rng, decimals(choices.units).pressure)
+        if choices.altitude_kind == "density"
+        else None,
         ranges=range_tables(
             tables,
             Supply(usable=0.28, reserve=0.04, wind=winds),
@@ -53,12 +56,17 @@ def _one_of_each(tables: tuple[CardTable, ...]) -> list[CardTable]:
     return list(found.values())
 
 
-def _rows(table: CardTable, rng: random.Random) -> RowTable:
+def _rows(table: CardTable, rng: random.Random, places: int) -> RowTable:
     rows = [[rng.choice([*table.altitude, float("nan")]) for _ in range(8)] for _ in range(13)]
     return RowTable(
         pressure_altitude=tuple(float(1000 * k) for k in range(13)),
         temperature=tuple(float(value) for value in range(-30, 41, 10)),
         row=np.array(rows),
+        change=np.where(
+            np.isnan(rows),
+            np.nan,
+            np.array([[rng.randint(-21, 21) / 10**places for _ in r] for r in rows]),
+        ),
         error=(0.15, 0.05, 1.0),
         rise=rng.choice([None, 2.4]),
     )

@@ -12,6 +12,7 @@ import numpy as np
 import pytest
 from card_factory import Sketch, make_card
 
+from cardgen.constants import FOOT, INCH_OF_MERCURY
 from cardgen.limits import Verdict
 from cardgen.profile import load_profile
 from cardgen.profile.assembly import model_of
@@ -22,7 +23,7 @@ from cardgen.tables.card import Card, CardTable, CellState
 from cardgen.tables.printed import pressure_from
 from cardgen.tables.range import DISTANCE_STEP, MINUTE_STEP, fuel_in, range_tables
 from cardgen.tables.rows import situation_of
-from cardgen.tables.solution import Model, solve
+from cardgen.tables.solution import Model, Situation, solve
 from cardgen.tables.verdict import judge
 from cardgen.units import from_unit, to_unit
 
@@ -202,8 +203,9 @@ def test_row_is_the_nearest_to_the_density_altitude() -> None:
     table = card.back.rows
     assert table is not None
     row = table.pressure_altitude.index(5000.0)
-    assert table.row[row, table.temperature.index(30.0)] == 8000.0
-    for altitude, celsius in ((0.0, 15.0), (5000.0, 5.1), (7500.0, 0.1), (10000.0, -4.8)):
+    cooler, warmer = (table.row[row, table.temperature.index(value)] for value in (20.0, 35.0))
+    assert cooler < 7800.0 <= warmer + 500.0
+    for altitude, celsius in ((5000.0, 5.1), (8000.0, -0.8)):
         nearest = min(table.temperature, key=lambda value: abs(value - celsius))
         if abs(nearest - celsius) < 0.3 and altitude in table.pressure_altitude:
             place = table.pressure_altitude.index(altitude), table.temperature.index(nearest)
@@ -227,6 +229,42 @@ def test_row_rises_with_altitude_and_with_temperature() -> None:
     for axis in (0, 1):
         change = np.diff(table.row, axis=axis)
         assert (change[np.isfinite(change)] >= 0.0).all()
+
+
+def test_row_and_change_lead_to_the_right_setting() -> None:
+    """At every place, and half a step away from it, what is left is at most what is said."""
+    model, card = demonstration()
+    table = card.back.rows
+    assert table is not None
+    rows = list(card.tables[0].altitude)
+    seen, changed = 0, 0.0
+    for i, altitude in enumerate(table.pressure_altitude):
+        for j, celsius in enumerate(table.temperature):
+            if np.isnan(table.change[i, j]):
+                continue
+            place = rows.index(table.row[i, j])
+            for up, warm in ((0.0, 0.0), (500.0, 7.5), (-500.0, -7.5), (500.0, -7.5)):
+                for printed in card.tables:
+                    right = solve(
+                        model,
+                        Situation(
+                            (altitude + up) * FOOT,
+                            celsius + warm + 273.15,
+                            printed.mass,
+                            model.mixture_index(printed.mixture),
+                        ),
+                        indicated_rpm=np.array(printed.rpm),
+                        power_fraction=printed.power_fraction,
+                        with_tolerance=False,
+                    )
+                    held = (printed.state[place, 0] == CellState.VALUE) & ~right.point.full_throttle
+                    said = printed.manifold_pressure[place, 0] + table.change[i, j]
+                    left = right.indicated_manifold_pressure / INCH_OF_MERCURY - said
+                    assert (np.abs(left[held]) <= table.error[0] + 1e-9).all()
+                    seen += int(held.sum())
+            changed = max(changed, abs(float(table.change[i, j])))
+    assert seen > 1000
+    assert changed > table.error[0]  # the change is worth its page
 
 
 def with_choices(**changed: Any) -> Card:

@@ -124,6 +124,12 @@ def _cell(value: float, decimals: int = 0, *, mark: str = "") -> Cell:
     return Cell(number(value, decimals), value, mark)
 
 
+def _signed(value: float, decimals: int) -> Cell:
+    """Return a number to add, with its sign, or the mark of none."""
+    cell = _cell(value, decimals)
+    return Cell(f"+{cell.text}", value) if value > 0.0 else cell
+
+
 def _hours(minutes: float, *, mark: str = "") -> Cell:
     """Return a time in hours and minutes, or the mark of none."""
     if not math.isfinite(minutes):
@@ -133,36 +139,51 @@ def _hours(minutes: float, *, mark: str = "") -> Cell:
 
 
 def _rows(card: Card, table: RowTable) -> Listing:
-    units = card.choices.units
-    degrees, feet = sign(units.temperature), sign(units.altitude)
-    errors = _amounts(card, table.error)
+    units, places = card.choices.units, card.decimals.pressure
+    degrees = sign(units.temperature)
+    pressure, flow, speed = _amounts(card, table.error)
     lead = [
-        f"The row ({altitude_label(card)}) of the tables at a pressure altitude (PA) and outside "
-        "air temperature (OAT). Take the nearest PA and OAT; nothing is read between.",
-        f"Half a row moves the right numbers by at most {errors[0]}, {errors[1]}, {errors[2]}.",
+        f"At the nearest pressure altitude (PA) and outside air temperature ({degrees}): the row "
+        f"to use ({altitude_label(card)}), and what to add to its manifold pressure, because rows "
+        "are for standard air. Nothing is read between.",
+        f"What is then still wrong is at most {pressure}, {flow}, {speed}. What is set must keep "
+        "every limit; full throttle and forbidden cells stay as printed.",
     ]
     if table.rise:
         lead.append(
-            f"OAT is true: in cruise this thermometer reads up to {number(math.ceil(table.rise))} "
-            f"{degrees} more."
+            f"The temperature is the true one: in cruise this thermometer reads up to "
+            f"{number(math.ceil(table.rise))} {degrees} more."
         )
     return Listing(
-        title="Which row: pressure altitude and temperature",
+        title="Which row, and what to add to it",
         lead=tuple(lead),
-        label=f"PA {feet}",
-        groups=(
+        label=f"PA {sign(units.altitude)}",
+        groups=tuple(
             Group(
-                f"OAT {degrees}",
-                tuple(number(value) for value in table.temperature),
-                (False,) * len(table.temperature),
-            ),
+                f"{number(value)} {degrees}",
+                (altitude_label(card).split()[0], sign(units.pressure)),
+                (False, False),
+            )
+            for value in table.temperature
         ),
         rows=tuple(
-            ListingRow(number(altitude), altitude, tuple(_cell(float(v)) for v in table.row[k]))
+            ListingRow(
+                number(altitude),
+                altitude,
+                tuple(
+                    cell
+                    for row, change in zip(table.row[k], table.change[k], strict=True)
+                    for cell in (
+                        _cell(float(row)),
+                        _signed(float(change), places),
+                    )
+                ),
+            )
             for k, altitude in enumerate(table.pressure_altitude)
         ),
-        marks=((OUT_OF_REACH, "No row of this card is near."),),
-        large_heads=True,
+        marks=(
+            (OUT_OF_REACH, "No row of this card is near, or it holds no part-throttle number."),
+        ),
     )
 
 

@@ -271,6 +271,9 @@ def configuration(identity: Identity) -> str:
     return f"{part_text('Engine', identity.engine)}; {part_text('propeller', identity.propeller)}"
 
 
+_STANDARD_AIR: Final = {"density": " in standard air; other air: see Which row", "pressure": ""}
+
+
 def units_text(card: Card) -> str:
     """Return the units of every column in words."""
     units = card.choices.units
@@ -279,7 +282,7 @@ def units_text(card: Card) -> str:
         f"manifold pressure {sign(units.pressure)}",
         f"fuel flow {sign(units.fuel_flow)}",
         f"true airspeed {sign(units.speed)}",
-        f"{long} ({short}) {sign(units.altitude)}",
+        f"{long} ({short}) {sign(units.altitude)}{_STANDARD_AIR[card.choices.altitude_kind]}",
     ]
     for k, unit in enumerate(second_units(card)):
         if unit is not None:

@@ -46,8 +46,10 @@ class RowTable:
         Columns, outside air temperature in the card's unit [-]
     row : ndarray, shape (rows, columns)
         The nearest density altitude that the card has a row for, NaN where none is near [-]
+    change : ndarray, shape (rows, columns)
+        What to add there to the manifold pressure of that row, NaN where no setting is known [-]
     error : tuple of float
-        What rounding to a row may move manifold pressure, fuel flow and speed by [-]
+        What is then still wrong, at most, of manifold pressure, fuel flow and speed [-]
     rise : float, optional
         What the thermometer reads too much at the greatest printed speed, in the card's degrees;
         None where the profile does not state it [-]
@@ -56,6 +58,7 @@ class RowTable:
     pressure_altitude: tuple[float, ...]
     temperature: tuple[float, ...]
     row: FloatArray
+    change: FloatArray
     error: tuple[float, float, float]
     rise: float | None = None
 

@@ -122,7 +122,7 @@ def compose(
     charts.append(speed_chart(model, choices))
     density = model.subject.aircraft.engine.fuel_density
     back = Back(
-        rows=row_table(choices, tables, recovery=model.gauges.temperature_recovery),
+        rows=row_table(model, choices, tables=tables),
         ranges=()
         if supply is None
         else range_tables(tables, supply, units=choices.units, fuel_density=density),

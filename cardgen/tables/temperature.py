@@ -18,7 +18,8 @@ from cardgen.atmosphere import (
 from cardgen.tables.back import RowTable
 from cardgen.tables.card import CardTable, CellState
 from cardgen.tables.choices import CardChoices, UnitSet
-from cardgen.tables.printed import temperature_step_in
+from cardgen.tables.printed import decimals, fuel_flow_in, rounded, temperature_step_in
+from cardgen.tables.solution import Model, Situation, solve
 from cardgen.units import from_unit, to_unit
 
 FloatArray = npt.NDArray[np.float64]
@@ -26,24 +27,24 @@ FloatArray = npt.NDArray[np.float64]
 MOST_ROWS: Final = 16
 _STEPS: Final = {"ft": (1000.0, 2000.0, 5000.0), "m": (250.0, 500.0, 1000.0)}
 _COLUMNS: Final = {
-    "degC": tuple(float(value) for value in range(-30, 41, 10)),
-    "degF": tuple(float(value) for value in range(-20, 101, 20)),
+    "degC": (-25.0, -10.0, 5.0, 20.0, 35.0),
+    "degF": (-15.0, 10.0, 35.0, 60.0, 85.0),
 }
 
 
 def row_table(
-    choices: CardChoices, tables: Sequence[CardTable], *, recovery: float | None = None
+    model: Model, choices: CardChoices, *, tables: Sequence[CardTable]
 ) -> RowTable | None:
-    """The rows of a card by pressure altitude and temperature.
+    """The rows of a card by pressure altitude and temperature, and what they lack there.
 
     Parameters
     ----------
+    model : Model
+        The aircraft [-]
     choices : CardChoices
         What the card shows [-]
     tables : sequence of CardTable
-        Its finished tables, for what rounding to a row moves [-]
-    recovery : float, optional
-        Recovery factor of the thermometer, None where it is not stated [-]
+        Its finished tables [-]
 
     Returns
     -------
@@ -53,7 +54,9 @@ def row_table(
     Notes
     -----
     A density altitude outside the rows by more than half a step has no row: nothing is carried on
-    beyond the card.
+    beyond the card. Equal density asks for less manifold pressure where air is colder, and for more
+    where it is warmer, than the standard air of the row; the change given is the middle of those
+    that the cells of the row ask for.
     """
     if choices.altitude_kind != "density":
         return None
@@ -72,13 +75,99 @@ def row_table(
         ),
         units.altitude,
     )
+    row = _nearest(rows, np.asarray(found), alone=_STEPS[units.altitude][0])
+    place = np.where(np.isnan(row), -1, np.searchsorted(rows, np.nan_to_num(row)))
+    altitudes = np.asarray(from_unit(pressure_altitude, units.altitude))
+    step = float(np.diff(altitudes)[0]) if altitudes.size > 1 else 0.0
+
+    def moved(share: float, of_temperature: float) -> tuple[FloatArray, FloatArray, FloatArray]:
+        """What is missing at a share of a step away from every place."""
+        return _moved(
+            model,
+            choices,
+            tables=tables,
+            place=place,
+            pressure_altitude=altitudes + share * step,
+            temperature=kelvin + of_temperature * (kelvin[1] - kelvin[0]),
+        )
+
+    change = _middle(moved(0.0, 0.0)[0], decimals(units).pressure)
+    # Right between two places, where "the nearest" is farthest.
+    corners = [moved(up, warm) for up in (-0.5, 0.5) for warm in (-0.5, 0.5)]
+    error = _left(corners, change)
+    recovery = model.gauges.temperature_recovery
     return RowTable(
         pressure_altitude=tuple(float(value) for value in pressure_altitude),
         temperature=tuple(float(value) for value in temperature),
-        row=_nearest(rows, np.asarray(found), alone=_STEPS[units.altitude][0]),
-        error=_error(tables),
+        row=row,
+        change=change,
+        error=error,
         rise=None if recovery is None else _rise(tables, recovery, units),
     )
+
+
+def _moved(
+    model: Model,
+    choices: CardChoices,
+    *,
+    tables: Sequence[CardTable],
+    place: npt.NDArray[np.intp],
+    pressure_altitude: FloatArray,
+    temperature: FloatArray,
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Right less printed pressure, fuel flow and speed, shape (places, temperatures, cells)."""
+    units = choices.units
+    density = model.subject.aircraft.engine.fuel_density
+    changes: tuple[list[FloatArray], ...] = ([], [], [])
+    for table in tables:
+        right = solve(
+            model,
+            Situation(
+                pressure_altitude[:, None, None],
+                temperature[None, :, None],
+                table.mass,
+                model.mixture_index(table.mixture),
+            ),
+            indicated_rpm=np.array(table.rpm),
+            power_fraction=table.power_fraction,
+            with_tolerance=False,
+        )
+        held = (place[..., None] >= 0) & ~right.point.full_throttle
+        held = held & (table.state[place, 0, :] == CellState.VALUE)
+        for found, printed, collected in zip(
+            (
+                to_unit(right.indicated_manifold_pressure, units.pressure),
+                fuel_flow_in(right.point.fuel_flow, units.fuel_flow, fuel_density=density),
+                to_unit(right.point.true_airspeed, units.speed),
+            ),
+            (table.manifold_pressure, table.fuel_flow, table.true_airspeed),
+            changes,
+            strict=True,
+        ):
+            collected.append(np.where(held, found - printed[place, 0, :], np.nan))
+    pressure, flow, speed = (np.concatenate(collected, axis=-1) for collected in changes)
+    return pressure, flow, speed
+
+
+def _middle(pressure: FloatArray, places: int) -> FloatArray:
+    """Change of pressure as printed: the middle of what the cells of a place ask for."""
+    known = ~np.isnan(pressure)
+    least = np.min(np.where(known, pressure, np.inf), axis=-1)
+    greatest = np.max(np.where(known, pressure, -np.inf), axis=-1)
+    with np.errstate(invalid="ignore"):  # of a place without cells, inf less inf
+        middle = rounded(0.5 * (least + greatest), places) + 0.0
+    return np.where(known.any(axis=-1), middle, np.nan)
+
+
+def _left(
+    corners: Sequence[tuple[FloatArray, FloatArray, FloatArray]], change: FloatArray
+) -> tuple[float, float, float]:
+    """What is still wrong, at most, of pressure, fuel flow and speed."""
+    worst = [0.0, 0.0, 0.0]
+    for pressure, flow, speed in corners:
+        for place, values in enumerate((pressure - change[..., None], flow, speed)):
+            worst[place] = max(worst[place], float(np.nanmax(np.abs(values), initial=0.0)))
+    return worst[0], worst[1], worst[2]
 
 
 def _rise(tables: Sequence[CardTable], recovery: float, units: UnitSet) -> float:
@@ -111,16 +200,3 @@ def _half_steps(rows: FloatArray, alone: float) -> tuple[float, float]:
     if rows.size == 1:
         return 0.5 * alone, 0.5 * alone
     return 0.5 * float(rows[1] - rows[0]), 0.5 * float(rows[-1] - rows[-2])
-
-
-def _error(tables: Sequence[CardTable]) -> tuple[float, float, float]:
-    """Half the largest change from one row to the next, of pressure, fuel flow and speed."""
-    worst = [0.0, 0.0, 0.0]
-    for table in tables:
-        value = table.state == CellState.VALUE
-        both = value[1:] & value[:-1]
-        arrays = (table.manifold_pressure, table.fuel_flow, table.true_airspeed)
-        for place, array in enumerate(arrays):
-            change = np.abs(np.diff(array, axis=0))[both]
-            worst[place] = max(worst[place], 0.5 * float(np.max(change, initial=0.0)))
-    return worst[0], worst[1], worst[2]
