@@ -10,6 +10,7 @@ import pytest
 from limits_specimen import ALL, BLADES, CONTINUOUS, EXACT, INHG, SHEET, flown, only
 
 from cardgen.aircraft import Condition, Setting
+from cardgen.constants import HORSEPOWER
 from cardgen.cruise import CruiseStatus, solve_cruise
 from cardgen.engine import Engine
 from cardgen.limits import GaugeError, Gauges, allowed_nearby, check
@@ -101,3 +102,18 @@ def test_enriching_is_no_second_reason_where_the_lean_mixture_is_over_itself(
     setting = flown(power_fraction=share, power_fraction_at_best_power=0.82)
     found = [finding.limit for finding in check(ALL, EXACT, setting).at()]
     assert ("leaning_at_best_power" in found) == noted
+
+
+def test_what_comes_nearest_to_a_rating_is_told_by_its_share() -> None:
+    """0.1 hp of 230 is nearer than 10 rpm of 2600, though watts are more than turns."""
+    setting = flown(indicated_rpm=2590.0, power=229.9 * HORSEPOWER)
+    found = one(check(only(ratings=(CONTINUOUS,)), EXACT, setting), "ratings")
+    assert "of Maximum continuous" in found.message
+    assert "2600 rpm" not in found.message
+
+
+def test_off_the_governing_range_the_margin_is_the_rpm_lost() -> None:
+    """100 rpm of sag, not the sum of both speeds."""
+    found = one(check(ALL, EXACT, flown(on_fine_stop=True, governed_rpm=2300.0)), "governing_range")
+    assert found.margin == pytest.approx(-100.0)
+    assert found.unit == "rpm"

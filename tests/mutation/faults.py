@@ -41,6 +41,7 @@ class Mutant:
 
     module: str
     line: int
+    column: int
     function: str
     before: str
     after: str
@@ -48,7 +49,7 @@ class Mutant:
 
     def __str__(self) -> str:
         """Return it on one line."""
-        return f"{self.module}:{self.line} {self.function}: {self.before}  =>  {self.after}"
+        return f"{self.module}:{self.line}:{self.column} {self.function}: {self.before}  =>  {self.after}"
 
 
 def _kept(tree: ast.AST) -> set[int]:
@@ -159,4 +160,5 @@ def mutants(module: str, source: str) -> Iterator[Mutant]:
             before, after = ast.unparse(node), ast.unparse(new)
             faulty = _Put(place, new).visit(deepcopy(tree))
             text = ast.unparse(ast.fix_missing_locations(faulty))
-            yield Mutant(module, getattr(node, "lineno", 0), function, before, after, text)
+            line, column = getattr(node, "lineno", 0), getattr(node, "col_offset", 0) + 1
+            yield Mutant(module, line, column, function, before, after, text)
