@@ -271,9 +271,6 @@ def configuration(identity: Identity) -> str:
     return f"{part_text('Engine', identity.engine)}; {part_text('propeller', identity.propeller)}"
 
 
-_STANDARD_AIR: Final = {"density": " in standard air; other air: see Which row", "pressure": ""}
-
-
 def units_text(card: Card) -> str:
     """Return the units of every column in words."""
     units = card.choices.units
@@ -282,7 +279,7 @@ def units_text(card: Card) -> str:
         f"manifold pressure {sign(units.pressure)}",
         f"fuel flow {sign(units.fuel_flow)}",
         f"true airspeed {sign(units.speed)}",
-        f"{long} ({short}) {sign(units.altitude)}{_STANDARD_AIR[card.choices.altitude_kind]}",
+        f"{long} ({short}) {sign(units.altitude)}",
     ]
     for k, unit in enumerate(second_units(card)):
         if unit is not None:
@@ -324,7 +321,9 @@ def tolerance_text(card: Card, tables: Iterable[CardTable], *, where: str = ON_P
             strict=True,
         )
     ]
-    return f"Tolerance (95 %, largest {where}): {', '.join(pieces)}"
+    # What other air does to a row by density altitude is told where the row is chosen.
+    air = "; standard air" if card.choices.altitude_kind == "density" else ""
+    return f"Tolerance (95 %, largest {where}): {', '.join(pieces)}{air}"
 
 
 def step_up(value: float, decimals: int) -> float:
