@@ -7,7 +7,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from limits_specimen import ALL, BLADES, CONTINUOUS, EXACT, INHG, SHEET, flown, only
+from limits_specimen import ALL, BLADES, CONTINUOUS, EXACT, INHG, MANUAL, SHEET, flown, only
 
 from cardgen.aircraft import Condition, Setting
 from cardgen.constants import HORSEPOWER
@@ -15,7 +15,7 @@ from cardgen.cruise import CruiseStatus, solve_cruise
 from cardgen.engine import Engine
 from cardgen.limits import GaugeError, Gauges, allowed_nearby, check
 from cardgen.limits.finding import Finding, Findings
-from cardgen.limits.kinds import RestrictedRpm, Source
+from cardgen.limits.kinds import ManifoldPressureCurve, RestrictedRpm, Source
 from cardgen.limits.statement import state_all
 from cardgen.limits.wording import MessageUnits
 from cardgen.profile import load_profile
@@ -108,8 +108,9 @@ def test_what_comes_nearest_to_a_rating_is_told_by_its_share() -> None:
     """0.1 hp of 230 is nearer than 10 rpm of 2600, though watts are more than turns."""
     setting = flown(indicated_rpm=2590.0, power=229.9 * HORSEPOWER)
     found = one(check(only(ratings=(CONTINUOUS,)), EXACT, setting), "ratings")
-    assert "of Maximum continuous" in found.message
-    assert "2600 rpm" not in found.message
+    said, _, _ = found.message.partition(";")
+    assert "the 230 hp of Maximum continuous" in said
+    assert "the 2600 rpm of Maximum continuous" not in said
 
 
 def test_off_the_governing_range_the_margin_is_the_rpm_lost() -> None:
@@ -117,3 +118,20 @@ def test_off_the_governing_range_the_margin_is_the_rpm_lost() -> None:
     found = one(check(ALL, EXACT, flown(on_fine_stop=True, governed_rpm=2300.0)), "governing_range")
     assert found.margin == pytest.approx(-100.0)
     assert found.unit == "rpm"
+
+
+def test_a_range_that_one_source_closes_conditionally_tells_the_manifold_pressure() -> None:
+    """One condition among two sources is enough for the pressure to matter."""
+    closed = replace(BLADES, above_manifold_pressure=20.0 * INHG, source=Source("Another sheet"))
+    limits = only(restricted_rpm=(BLADES, closed))
+    assert "23.0 inHg" in one(check(limits, EXACT, flown()), "restricted_rpm").message
+
+
+def test_what_a_falling_chart_permits_over_square_is_its_least_in_the_band() -> None:
+    """At 2200 ± 30 rpm a chart that falls permits what it gives at 2230."""
+    chart = ManifoldPressureCurve(
+        "chart", (1800.0, 2700.0), (29.0 * INHG, 20.0 * INHG), "See chart", MANUAL
+    )
+    setting = flown(indicated_rpm=2200.0, indicated_manifold_pressure=23.0 * INHG)
+    said = one(check(only(manifold_pressure_curve=(chart,)), BAND, setting), "over_square").message
+    assert "up to 24.7 inHg true at this rpm" in said

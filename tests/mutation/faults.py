@@ -49,7 +49,8 @@ class Mutant:
 
     def __str__(self) -> str:
         """Return it on one line."""
-        return f"{self.module}:{self.line}:{self.column} {self.function}: {self.before}  =>  {self.after}"
+        place = f"{self.module}:{self.line}:{self.column} {self.function}"
+        return f"{place}: {self.before}  =>  {self.after}"
 
 
 def _kept(tree: ast.AST) -> set[int]:
