@@ -80,28 +80,26 @@ def row_table(
     altitudes = np.asarray(from_unit(pressure_altitude, units.altitude))
     step = float(np.diff(altitudes)[0]) if altitudes.size > 1 else 0.0
 
-    def moved(share: float, of_temperature: float) -> tuple[FloatArray, FloatArray, FloatArray]:
-        """What is missing at a share of a step away from every place."""
-        return _moved(
-            model,
-            choices,
-            tables=tables,
-            place=place,
-            pressure_altitude=altitudes + share * step,
-            temperature=kelvin + of_temperature * (kelvin[1] - kelvin[0]),
-        )
-
-    change = _middle(moved(0.0, 0.0)[0], decimals(units).pressure)
-    # Right between two places, where "the nearest" is farthest.
-    corners = [moved(up, warm) for up in (-0.5, 0.5) for warm in (-0.5, 0.5)]
-    error = _left(corners, change)
+    # Every place, and right between places, where "the nearest" is farthest.
+    up, warm = np.array([(0.0, 0.0), (-0.5, -0.5), (-0.5, 0.5), (0.5, -0.5), (0.5, 0.5)]).T
+    pressure, flow, speed = _moved(
+        model,
+        choices,
+        tables=tables,
+        place=place,
+        pressure_altitude=altitudes + up[:, None] * step,
+        temperature=kelvin + warm[:, None] * (kelvin[1] - kelvin[0]),
+    )
+    change = _middle(pressure[0], decimals(units).pressure)
+    left = (pressure - change[..., None], flow, speed)
+    worst = (float(np.nanmax(np.abs(values), initial=0.0)) for values in left)
     recovery = model.gauges.temperature_recovery
     return RowTable(
         pressure_altitude=tuple(float(value) for value in pressure_altitude),
         temperature=tuple(float(value) for value in temperature),
         row=row,
         change=change,
-        error=error,
+        error=(next(worst), next(worst), next(worst)),
         rise=None if recovery is None else _rise(tables, recovery, units),
     )
 
@@ -115,7 +113,10 @@ def _moved(
     pressure_altitude: FloatArray,
     temperature: FloatArray,
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Right less printed pressure, fuel flow and speed, shape (places, temperatures, cells)."""
+    """Right less printed pressure, fuel flow and speed, in the card's units.
+
+    Altitudes have shape (k, rows) and temperatures (k, columns); results (k, rows, columns, cells).
+    """
     units = choices.units
     density = model.subject.aircraft.engine.fuel_density
     changes: tuple[list[FloatArray], ...] = ([], [], [])
@@ -123,8 +124,8 @@ def _moved(
         right = solve(
             model,
             Situation(
-                pressure_altitude[:, None, None],
-                temperature[None, :, None],
+                pressure_altitude[:, :, None, None],
+                temperature[:, None, :, None],
                 table.mass,
                 model.mixture_index(table.mixture),
             ),
@@ -157,17 +158,6 @@ def _middle(pressure: FloatArray, places: int) -> FloatArray:
     with np.errstate(invalid="ignore"):  # of a place without cells, inf less inf
         middle = rounded(0.5 * (least + greatest), places) + 0.0
     return np.where(known.any(axis=-1), middle, np.nan)
-
-
-def _left(
-    corners: Sequence[tuple[FloatArray, FloatArray, FloatArray]], change: FloatArray
-) -> tuple[float, float, float]:
-    """What is still wrong, at most, of pressure, fuel flow and speed."""
-    worst = [0.0, 0.0, 0.0]
-    for pressure, flow, speed in corners:
-        for place, values in enumerate((pressure - change[..., None], flow, speed)):
-            worst[place] = max(worst[place], float(np.nanmax(np.abs(values), initial=0.0)))
-    return worst[0], worst[1], worst[2]
 
 
 def _rise(tables: Sequence[CardTable], recovery: float, units: UnitSet) -> float:
