@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 import numpy as np
 import numpy.typing as npt
 
 from cardgen.airframe import Airframe
 from cardgen.engine import Engine, Mixture
 from cardgen.propeller import Propeller
+from cardgen.records import dataclass
 
 Floats = float | npt.NDArray[np.float64]
 

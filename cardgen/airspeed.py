@@ -11,7 +11,6 @@ References
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from itertools import combinations
 from typing import Final
 
@@ -26,6 +25,7 @@ from cardgen.constants import (
     SEA_LEVEL_TEMPERATURE,
 )
 from cardgen.errors import DomainError
+from cardgen.records import dataclass
 
 FloatArray = npt.NDArray[np.float64]
 

@@ -8,7 +8,7 @@ and the number that is printed therefore cannot differ.
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, fields
+from dataclasses import fields
 from enum import IntEnum
 from typing import Final
 
@@ -38,6 +38,7 @@ from cardgen.propeller import (
     slip,
 )
 from cardgen.propeller.table import LEAST_ADVANCE_RATIO
+from cardgen.records import dataclass
 from cardgen.roots import find_root, secant_steps
 
 FloatArray = npt.NDArray[np.float64]

@@ -16,7 +16,8 @@ Errors carry fields; their text says where, what was found, what was expected an
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+
+from cardgen.records import dataclass
 
 
 @dataclass(frozen=True, slots=True, order=True)

@@ -12,7 +12,6 @@ import math
 import re
 import unicodedata
 from collections.abc import Iterable
-from dataclasses import dataclass
 from typing import Final, Literal
 
 import numpy as np
@@ -20,6 +19,7 @@ import numpy.typing as npt
 
 from cardgen import constants as c
 from cardgen.errors import QuantityError
+from cardgen.records import dataclass
 
 FloatArray = npt.NDArray[np.float64]
 

@@ -115,6 +115,7 @@ def test_help_loads_only_click() -> None:
         "cardgen.cli.failure",
         "cardgen.cli.main",
         "cardgen.errors",
+        "cardgen.records",
     }
 
 

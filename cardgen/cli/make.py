@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import sys
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Final
 
@@ -14,6 +13,7 @@ from cardgen.cli.failure import failure
 from cardgen.cli.loading import fit_options, load
 from cardgen.cli.parallel import spread
 from cardgen.errors import CardgenError, ReleaseError, UsageError
+from cardgen.records import dataclass
 
 if TYPE_CHECKING:
     from cardgen.render.release import Outcome

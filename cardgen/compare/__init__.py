@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Collection
-from dataclasses import dataclass
 
 from cardgen.compare.limits import LimitChange, compare_gauges, compare_limits
 from cardgen.compare.settings import (
@@ -17,6 +16,7 @@ from cardgen.compare.settings import (
 from cardgen.compare.verdict import NAMES, Scale, rating_note, scale_of, signed, verdict
 from cardgen.fit import Part
 from cardgen.limits.kinds import Rating
+from cardgen.records import dataclass
 from cardgen.tables.choices import CardChoices
 from cardgen.tables.printed import message_units
 from cardgen.tables.solution import Model

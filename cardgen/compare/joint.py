@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Collection, Sequence
-from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
 
 from cardgen.fit import PARTS, Knowledge, Parameter, Part
+from cardgen.records import dataclass
 
 FloatArray = npt.NDArray[np.float64]
 

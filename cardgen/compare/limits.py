@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final, Literal
 
 from cardgen.limits import Limits, MessageUnits
 from cardgen.limits.gauges import Gauges
 from cardgen.limits.kinds import CATEGORIES, Category, Limit
 from cardgen.limits.statement import CATEGORY_WORDS, gauge_notes, state_all
+from cardgen.records import dataclass
 
 Kind = Literal["appeared", "moved", "vanished", "new source", "no longer stated", "now stated"]
 

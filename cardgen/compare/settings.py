@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Collection
-from dataclasses import dataclass
 from typing import Final, Literal
 
 import numpy as np
@@ -16,6 +15,7 @@ from cardgen.cruise import CruiseStatus, solve_cruise
 from cardgen.fit import Part, applied, parameters
 from cardgen.fit.tolerance import COVERAGE_FACTOR
 from cardgen.limits.gauges import indicated_manifold_pressure, true_rpm
+from cardgen.records import dataclass
 from cardgen.tables.choices import CardChoices
 from cardgen.tables.rows import situation_of
 from cardgen.tables.solution import Model, Situation, Solution, solve

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -12,6 +11,7 @@ import numpy.typing as npt
 from cardgen.compare.settings import QUANTITIES, Change
 from cardgen.constants import HORSEPOWER
 from cardgen.limits.kinds import Rating
+from cardgen.records import dataclass
 from cardgen.tables.choices import UnitSet
 from cardgen.tables.printed import decimals
 from cardgen.units import to_unit

@@ -15,13 +15,13 @@ References
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
 from cardgen.curves import MonotoneCurve
+from cardgen.records import dataclass
 
 Floats = float | npt.NDArray[np.float64]
 FloatArray = npt.NDArray[np.float64]

@@ -29,7 +29,6 @@ References
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -44,6 +43,7 @@ from cardgen.constants import (
     SEA_LEVEL_TEMPERATURE,
 )
 from cardgen.engine.mixture import BEST_POWER_FUEL_AIR_RATIO, Mixture, relative_power
+from cardgen.records import dataclass
 
 Floats = float | npt.NDArray[np.float64]
 FloatArray = npt.NDArray[np.float64]

@@ -10,7 +10,6 @@ References
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -19,6 +18,7 @@ import numpy.typing as npt
 from cardgen.fit.evidence import Evidence, standard_deviations
 from cardgen.fit.knowledge import Knowledge
 from cardgen.fit.model import Subject, predict
+from cardgen.records import dataclass
 
 FloatArray = npt.NDArray[np.float64]
 

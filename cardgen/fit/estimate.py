@@ -10,7 +10,6 @@ References
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -22,6 +21,7 @@ from cardgen.fit.loss import ROBUST_FROM, robust
 from cardgen.fit.model import Subject, predict, predict_continued, slopes
 from cardgen.fit.parameters import parameters, prior_covariance, prior_mean
 from cardgen.fit.search import difference_step, most_likely
+from cardgen.records import dataclass
 
 FloatArray = npt.NDArray[np.float64]
 

@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
 from cardgen.constants import HOUR, INCH_OF_MERCURY, KNOT, POUND
+from cardgen.records import dataclass
 from cardgen.units import Unit
 
 FloatArray = npt.NDArray[np.float64]

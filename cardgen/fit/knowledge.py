@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Collection
-from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
@@ -19,6 +18,7 @@ from cardgen.fit.parameters import (
     prior_covariance,
     prior_mean,
 )
+from cardgen.records import dataclass
 
 FloatArray = npt.NDArray[np.float64]
 Bounds = tuple[float, float]

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
@@ -16,6 +15,7 @@ from cardgen.cruise import CruisePoint, balance, solve_cruise
 from cardgen.engine import Mixture
 from cardgen.fit.evidence import Evidence
 from cardgen.fit.parameters import applied
+from cardgen.records import dataclass
 
 FloatArray = npt.NDArray[np.float64]
 

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final, Literal
 
 import numpy as np
@@ -13,6 +12,7 @@ from cardgen.fit.estimate import Estimate
 from cardgen.fit.evidence import Evidence, Reading, standard_deviations
 from cardgen.fit.model import Subject, cruise_of_rows, predict
 from cardgen.fit.rereading import AIRSPEEDS, alternatives, reread
+from cardgen.records import dataclass
 from cardgen.units import Unit
 
 FloatArray = npt.NDArray[np.float64]

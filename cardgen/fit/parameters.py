@@ -7,7 +7,7 @@ part can return to its prior while the others keep what they learned.
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import Final, Literal
 
 import numpy as np
@@ -15,6 +15,7 @@ import numpy.typing as npt
 
 from cardgen.aircraft import Aircraft
 from cardgen.engine import BREATHING_NODES, Mixture
+from cardgen.records import dataclass
 
 FloatArray = npt.NDArray[np.float64]
 Part = Literal["engine", "mixtures", "propeller", "airframe"]

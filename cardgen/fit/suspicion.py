@@ -13,7 +13,6 @@ References
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -27,6 +26,7 @@ from cardgen.fit.model import Subject, predict_continued, slopes
 from cardgen.fit.parameters import parameters
 from cardgen.fit.rereading import AIRSPEEDS, alternatives, reread, scale_of
 from cardgen.fit.search import difference_step, most_likely, within_bounds
+from cardgen.records import dataclass
 from cardgen.units import Unit
 
 FloatArray = npt.NDArray[np.float64]

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -15,6 +14,7 @@ from cardgen.limits.flown import Flown
 from cardgen.limits.gauges import Gauges
 from cardgen.limits.kinds import Limits
 from cardgen.limits.wording import MessageUnits
+from cardgen.records import dataclass
 
 LETTERS: Final = "ABCDEFGHJKLMNPQRSTUVWXYZ"
 """Letters of reasons; I and O are left out because they read as digits on a shaking knee."""

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass
 
 import numpy as np
 
@@ -22,6 +21,7 @@ from cardgen.limits.wording import (
     reading,
     unit_of,
 )
+from cardgen.records import dataclass
 
 Words = Callable[[Index, float], str]
 """Part of a message that depends on the setting: its index and its margin."""

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 import numpy as np
 
@@ -11,6 +10,7 @@ from cardgen.limits.finding import BoolArray, FloatArray, Verdict
 from cardgen.limits.flown import Span, Spans
 from cardgen.limits.judge import SLACK, Judged, at_least, at_most, verdict_where
 from cardgen.limits.kinds import AltitudeSchedule, LeastManifoldPressure, ManifoldPressureCurve
+from cardgen.records import dataclass
 
 
 @dataclass(frozen=True, slots=True)

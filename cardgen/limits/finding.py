@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
 from enum import IntEnum
 from typing import Literal
 
@@ -11,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from cardgen.limits.kinds import Category
+from cardgen.records import dataclass
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]

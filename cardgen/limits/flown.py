@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
+from dataclasses import fields
 
 import numpy as np
 from numpy.typing import NDArray
@@ -14,6 +14,7 @@ from cardgen.limits.gauges import (
     true_rpm,
     true_rpm_interval,
 )
+from cardgen.records import dataclass
 
 Floats = float | NDArray[np.float64]
 FloatArray = NDArray[np.float64]

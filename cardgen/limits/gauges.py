@@ -9,7 +9,6 @@ the rest is *unknown*.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -18,6 +17,7 @@ from numpy.typing import NDArray
 from cardgen.airspeed import PositionError
 from cardgen.constants import INCH_OF_MERCURY
 from cardgen.errors import DomainError
+from cardgen.records import dataclass
 
 Floats = float | NDArray[np.float64]
 FloatArray = NDArray[np.float64]

@@ -7,8 +7,9 @@ gauges read is widened by their error in `cardgen.limits.gauges`.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Literal
+
+from cardgen.records import dataclass
 
 Category = Literal[
     "restricted_rpm",

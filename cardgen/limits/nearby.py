@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -14,6 +13,7 @@ from cardgen.limits.flown import Flown
 from cardgen.limits.gauges import Gauges
 from cardgen.limits.kinds import Limits
 from cardgen.limits.wording import MessageUnits
+from cardgen.records import dataclass
 
 STEP_RPM: Final = 25.0
 """Finest rpm that is set on a tachometer in flight. Common practice, no source."""

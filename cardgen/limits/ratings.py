@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 import numpy as np
 
@@ -11,6 +10,7 @@ from cardgen.limits.finding import BoolArray, FloatArray, Verdict
 from cardgen.limits.flown import Spans
 from cardgen.limits.judge import SLACK, Judged, same_limit
 from cardgen.limits.kinds import Rating
+from cardgen.records import dataclass
 
 
 @dataclass(frozen=True, slots=True)

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final, assert_never
 
 from cardgen.limits.gauges import GaugeError, Gauges
@@ -24,6 +23,7 @@ from cardgen.limits.kinds import (
     TemperatureEnvelope,
 )
 from cardgen.limits.wording import Measure, MessageUnits, amount, number, spread, unit_of
+from cardgen.records import dataclass
 
 CATEGORY_WORDS: Final[dict[Category, str]] = {
     "restricted_rpm": "restricted rpm ranges",

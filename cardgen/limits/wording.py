@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
 from typing import Literal, assert_never
 
 from cardgen.limits.judge import SLACK
+from cardgen.records import dataclass
 from cardgen.units import Dimension, to_unit
 
 Measure = Literal[

@@ -2,12 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from cardgen.constants import HORSEPOWER
 from cardgen.fit import Knowledge, Subject, knowledge_from_profile
 from cardgen.profile.digest import digest_of
 from cardgen.profile.document import Profile
+from cardgen.records import dataclass
 from cardgen.tables.choices import BreakIn, CardChoices
 from cardgen.tables.solution import Model
 from cardgen.units import to_unit

@@ -5,13 +5,14 @@ from __future__ import annotations
 import difflib
 import re
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import field
 from pathlib import Path
 from typing import Final
 
 from cardgen.errors import Problem, QuantityError
 from cardgen.profile.reading import LARGEST_FILE, read_text
 from cardgen.profile.values import shown as shown_value
+from cardgen.records import dataclass
 from cardgen.units import Dimension, Unit, split_suffix
 
 MOST_ROWS: Final = 2000

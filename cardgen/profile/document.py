@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from pathlib import Path
 
 from cardgen.aircraft import Aircraft
 from cardgen.engine import Mixture
 from cardgen.limits.gauges import Gauges
 from cardgen.limits.kinds import Limits, Rating, Source
+from cardgen.records import dataclass
 from cardgen.tables.choices import CardChoices
 
 

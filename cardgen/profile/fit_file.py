@@ -7,7 +7,6 @@ part return to what its data sheet says.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from pathlib import Path
 from typing import Final
 
@@ -24,6 +23,7 @@ from cardgen.profile.assembly import Learned, subject_of
 from cardgen.profile.digest import MODEL_VERSION, digest_of
 from cardgen.profile.document import Profile
 from cardgen.profile.fit_record import FitRecord, read_fit
+from cardgen.records import dataclass
 
 FloatArray = npt.NDArray[np.float64]
 

@@ -8,7 +8,6 @@ from __future__ import annotations
 import json
 import math
 from collections.abc import Collection, Mapping, Sequence
-from dataclasses import dataclass
 from pathlib import Path
 from typing import Any, Final
 
@@ -21,6 +20,7 @@ from cardgen.profile.digest import MODEL_VERSION
 from cardgen.profile.document import Profile
 from cardgen.profile.fit_sections import CoversSection, EarlierSection, FitFileSection
 from cardgen.profile.parsing import ProfileFile, parse_file
+from cardgen.records import dataclass
 
 FloatArray = npt.NDArray[np.float64]
 

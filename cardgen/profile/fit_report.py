@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import Any, Final
 
 import numpy as np
@@ -24,6 +24,7 @@ from cardgen.profile.document import Profile
 from cardgen.profile.fit_words import parameter_words, sign_of, suspicion_text
 from cardgen.profile.fitting import Start, knowledge_of
 from cardgen.profile.points import Points
+from cardgen.records import dataclass
 from cardgen.tables.flights import FlightPlan, points_to_fly
 from cardgen.tables.printed import decimals, fuel_flow_in, unit_sign
 from cardgen.units import to_unit

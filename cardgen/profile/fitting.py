@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import Final
 
 import numpy as np
@@ -25,6 +25,7 @@ from cardgen.profile.document import Profile
 from cardgen.profile.fit_file import Match, match, mixture_digests, part_digests
 from cardgen.profile.fit_record import Earlier, FitRecord
 from cardgen.profile.points import Points
+from cardgen.records import dataclass
 
 FloatArray = npt.NDArray[np.float64]
 

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
 from typing import Annotated, Any, Literal, get_args, get_origin
 
 from pydantic import Tag
@@ -14,6 +13,7 @@ from cardgen.profile.engine_file import EngineFile
 from cardgen.profile.propeller_file import PropellerFile
 from cardgen.profile.section import Section
 from cardgen.profile.values import Value
+from cardgen.records import dataclass
 
 Kind = Literal["aircraft", "engine", "propeller"]
 FILES: dict[Kind, type[Section]] = {

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import difflib
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import field
 from pathlib import Path
 from typing import Any, Generic, Literal, TypeVar
 
@@ -15,6 +15,7 @@ from cardgen.profile.keys import FILES, Kind, section_at, value_words
 from cardgen.profile.reading import Node, dotted, read_document
 from cardgen.profile.section import Section
 from cardgen.profile.values import shown as shown_value
+from cardgen.records import dataclass
 
 MOST_PROBLEMS = 50
 """Problems reported per file; whoever has more is better served by the first of them."""

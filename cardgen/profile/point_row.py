@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import hashlib
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import field
 from typing import Final
 
 import numpy as np
@@ -20,6 +20,7 @@ from cardgen.constants import FOOT, HORSEPOWER, HOUR, INCH_OF_MERCURY, KNOT, POU
 from cardgen.profile.cells import Row
 from cardgen.profile.document import Profile
 from cardgen.profile.values import shown as shown_value
+from cardgen.records import dataclass
 from cardgen.units import Dimension
 
 MOST_LEGS: Final = 8

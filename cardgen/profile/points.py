@@ -10,7 +10,7 @@ from __future__ import annotations
 import hashlib
 import os
 from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from pathlib import Path
 from typing import Final
 
@@ -33,6 +33,7 @@ from cardgen.profile.point_row import (
     Entry,
     entry_of,
 )
+from cardgen.records import dataclass
 
 _SCALED: Final = (*READ, "oat", "isa_deviation", "power", "leg1_gs")
 

@@ -11,13 +11,14 @@ from __future__ import annotations
 import re
 import stat
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, field
+from dataclasses import field
 from pathlib import Path
 from typing import Any, NamedTuple
 
 import yaml
 
 from cardgen.errors import Problem
+from cardgen.records import dataclass
 
 LARGEST_FILE = 1_000_000  # bytes; a complete profile is about 10 000
 DEEPEST_NESTING = 12  # a complete profile needs 6

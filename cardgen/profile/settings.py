@@ -5,7 +5,6 @@ from __future__ import annotations
 import contextlib
 import re
 from collections.abc import Mapping
-from dataclasses import dataclass
 from pathlib import Path
 from typing import Final
 
@@ -17,6 +16,7 @@ from cardgen.constants import FOOT, INCH_OF_MERCURY, POUND
 from cardgen.errors import DataError
 from cardgen.profile.cells import Column, Row, Sheet, read_sheet
 from cardgen.profile.document import Profile
+from cardgen.records import dataclass
 from cardgen.units import Dimension
 
 FloatArray = npt.NDArray[np.float64]

@@ -5,7 +5,6 @@ from __future__ import annotations
 import datetime
 import re
 import unicodedata
-from dataclasses import dataclass
 from functools import cached_property
 from typing import Annotated, Any
 
@@ -14,6 +13,7 @@ from pydantic.json_schema import JsonSchemaValue
 from pydantic_core import PydanticCustomError, core_schema
 
 from cardgen.errors import QuantityError
+from cardgen.records import dataclass
 from cardgen.units import EXAMPLES, Dimension, parse_quantity
 
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")

@@ -2,12 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from cardgen.curves import MonotoneCurve
+from cardgen.records import dataclass
 
 FloatArray = NDArray[np.float64]
 

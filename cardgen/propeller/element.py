@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from functools import lru_cache
 
 import numpy as np
@@ -11,6 +10,7 @@ from numpy.typing import ArrayLike, NDArray
 from cardgen.propeller.blade import REFERENCE_STATION, Blade, Body, Propeller
 from cardgen.propeller.loss import LossFactor, loss_factor
 from cardgen.propeller.section import Section, clark_y, lift_drag
+from cardgen.records import dataclass
 from cardgen.roots import find_root, secant_steps
 
 FloatArray = NDArray[np.float64]

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from functools import lru_cache
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
+
+from cardgen.records import dataclass
 
 FloatArray = NDArray[np.float64]
 

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from functools import lru_cache
 
 import numpy as np
@@ -12,6 +11,7 @@ from cardgen.curves import SplineGrid
 from cardgen.errors import DomainError
 from cardgen.propeller.blade import REFERENCE_STATION, Propeller
 from cardgen.propeller.element import Coefficients, coefficients
+from cardgen.records import dataclass
 from cardgen.roots import find_root
 
 FloatArray = NDArray[np.float64]

@@ -8,11 +8,11 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
 
+from cardgen.records import dataclass
 from cardgen.render.wording import (
     FULL_THROTTLE,
     OUT_OF_REACH,

@@ -4,11 +4,11 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
 from functools import lru_cache
 from itertools import pairwise
 
 from cardgen.errors import ReleaseError
+from cardgen.records import dataclass
 from cardgen.render.beside import Cell, Listing, listings
 from cardgen.render.expectation import is_same
 from cardgen.render.fonts import CAP_HEIGHT, Face, printable, width

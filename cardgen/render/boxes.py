@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass, replace
+from dataclasses import replace
 
+from cardgen.records import dataclass
 from cardgen.render.fonts import Face, width
 
 

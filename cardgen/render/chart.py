@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
 from itertools import pairwise
 from typing import Final
 
+from cardgen.records import dataclass
 from cardgen.render.boxes import Box, Frame, Ground, Rule, Run, Tint, Trace
 from cardgen.render.columns import LEADING, NOTE
 from cardgen.render.fonts import CAP_HEIGHT, Face, printable, width, wrap

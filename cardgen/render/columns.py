@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass
 from functools import lru_cache
 from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
+from cardgen.records import dataclass
 from cardgen.render.edition import Edition
 from cardgen.render.fonts import Face, width
 from cardgen.render.wording import (

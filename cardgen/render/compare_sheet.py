@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -12,6 +11,7 @@ from cardgen.compare import Change, Comparison, rating_note, scale_of, signed
 from cardgen.constants import HORSEPOWER
 from cardgen.limits.kinds import Rating
 from cardgen.profile.document import Identity
+from cardgen.records import dataclass
 from cardgen.render.boxes import Box, Frame, Rule, Run, Tint
 from cardgen.render.columns import LEADING, NOTE
 from cardgen.render.fonts import CAP_HEIGHT, Face, printable, width

@@ -9,8 +9,9 @@ from __future__ import annotations
 
 import re
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
 from typing import Final
+
+from cardgen.records import dataclass
 
 _NUMBER: Final = rb"-?(?:\d+\.?\d*|\.\d+)"
 _SHOWN: Final = re.compile(

@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 import re
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
 
 from cardgen.errors import ReleaseError
 from cardgen.profile.document import Identity
+from cardgen.records import dataclass
 from cardgen.tables.card import Card, CardTable, CellState
 
 _DIGEST: Final = re.compile(r"[0-9a-f]{64}")

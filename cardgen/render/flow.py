@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import Final
 
 from cardgen.errors import ReleaseError
+from cardgen.records import dataclass
 from cardgen.render.beside import Listing
 from cardgen.render.boxes import Box
 from cardgen.render.chart import (

@@ -8,11 +8,11 @@ from __future__ import annotations
 
 import re
 import struct
-from dataclasses import dataclass
 from functools import cache, lru_cache
 from pathlib import Path
 from typing import Final, Literal
 
+from cardgen.records import dataclass
 from cardgen.render.packaged import damaged, packaged
 
 Face = Literal["regular", "bold"]

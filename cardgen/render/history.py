@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 import json
-from dataclasses import dataclass, fields
+from dataclasses import fields
 from pathlib import Path
 from typing import Any, Final, Literal
 
 from cardgen.errors import ReleaseError
+from cardgen.records import dataclass
 from cardgen.render.files import read_if_there, write_whole
 
 HISTORY_NAME: Final = "issues.json"

@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from functools import lru_cache
 from itertools import groupby
 from typing import Final
 
+from cardgen.records import dataclass
 from cardgen.render.beside import Cell, Listing, ListingRow, marks_of
 from cardgen.render.boxes import Box, Rule, Run, Tint
 from cardgen.render.columns import LEADING, LEAST_FIGURE, LEAST_SETTING, NOTE

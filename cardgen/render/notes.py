@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final, Literal
 
+from cardgen.records import dataclass
 from cardgen.render.boxes import Box, Run
 from cardgen.render.columns import LEADING, NOTE
 from cardgen.render.fonts import wrap

@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final
 
 from cardgen.errors import UsageError
+from cardgen.records import dataclass
 from cardgen.render.boxes import Box, Page, Rule, Run, moved
 from cardgen.render.fonts import width as width_of
 

@@ -9,9 +9,9 @@ from __future__ import annotations
 import math
 import re
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 from cardgen.errors import ReleaseError
+from cardgen.records import dataclass
 from cardgen.render.beside_readback import Beside, squeezed
 from cardgen.render.edition import Edition
 from cardgen.render.expectation import (

@@ -16,11 +16,12 @@ from __future__ import annotations
 import hashlib
 import re
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from pathlib import Path
 from typing import Final, Literal
 
 from cardgen.errors import ReleaseError
+from cardgen.records import dataclass
 from cardgen.render.files import locked, read_if_there, write_whole
 from cardgen.render.history import (
     HISTORY_NAME,

@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final
 
 from cardgen.errors import ReleaseError
+from cardgen.records import dataclass
 from cardgen.render.boxes import Box, Frame, Page, Rule, Run, moved
 from cardgen.render.columns import LEADING, NOTE
 from cardgen.render.fonts import CAP_HEIGHT, Face, printable, width, wrap

@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 import re
-from dataclasses import dataclass
 from io import BytesIO
 from typing import TYPE_CHECKING, Any, Final
 
 from cardgen.errors import ReleaseError
+from cardgen.records import dataclass
 from cardgen.render.content_stream import PageFont, characters_of, shown_text
 from cardgen.render.paper import carries_two
 

@@ -5,11 +5,12 @@ Everything here is in the units of the card and rounded as printed, except the l
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Final, Literal
 
 import numpy as np
 from numpy.typing import NDArray
+
+from cardgen.records import dataclass
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]

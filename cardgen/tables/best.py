@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
 from typing import Any, Final, Literal
 
 import numpy as np
 import numpy.typing as npt
 
 from cardgen.limits import Findings, Verdict
+from cardgen.records import dataclass
 from cardgen.tables.back import BestSettings, BestTable
 from cardgen.tables.choices import CardChoices, UnitSet
 from cardgen.tables.printed import (

@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from enum import IntEnum
 
 import numpy as np
 from numpy.typing import NDArray
 
+from cardgen.records import dataclass
 from cardgen.tables.back import NOTHING_BESIDE, Back
 from cardgen.tables.choices import CardChoices
 from cardgen.tables.printed import Decimals

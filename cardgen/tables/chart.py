@@ -7,7 +7,7 @@ manifold pressure, the full-throttle line that ends them, and the ground that li
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from itertools import pairwise
 from typing import Final
 
@@ -15,6 +15,7 @@ import numpy as np
 import numpy.typing as npt
 
 from cardgen.limits import Findings, Verdict
+from cardgen.records import dataclass
 from cardgen.tables.back import Area, Axis, Chart, Curve, Panel
 from cardgen.tables.choices import CardChoices, UnitSet
 from cardgen.tables.printed import message_units, pressure_from

@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Final, Literal
 
 from cardgen.limits.kinds import Source
+from cardgen.records import dataclass
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,7 +8,7 @@ card and a check of what it prints cannot disagree.
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import Final
 
 import numpy as np
@@ -18,6 +18,7 @@ from cardgen.atmosphere import pressure_altitude_at_density_altitude, standard_t
 from cardgen.cruise import CruiseStatus
 from cardgen.limits import Findings, Judgement, Verdict
 from cardgen.limits.bars import bars_of, letter
+from cardgen.records import dataclass
 from cardgen.tables.back import Back, Chart, Supply
 from cardgen.tables.best import best_tables
 from cardgen.tables.card import Card, CardTable, CellState, Reason, Section

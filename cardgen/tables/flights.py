@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -15,6 +14,7 @@ from cardgen.fit.design import design
 from cardgen.fit.tolerance import COVERAGE_FACTOR
 from cardgen.limits import Verdict
 from cardgen.limits.gauges import true_manifold_pressure, true_rpm
+from cardgen.records import dataclass
 from cardgen.tables.choices import CardChoices
 from cardgen.tables.printed import decimals
 from cardgen.tables.rows import situation_of

@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
 from cardgen.limits import Verdict
+from cardgen.records import dataclass
 from cardgen.tables.solution import Model, Situation, Solution, solve, true_temperature_of
 from cardgen.tables.verdict import judge, status_words
 

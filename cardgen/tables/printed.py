@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
 import numpy.typing as npt
 
 from cardgen.limits import MessageUnits
+from cardgen.records import dataclass
 from cardgen.tables.choices import SecondUnits, UnitSet
 from cardgen.units import find_unit, from_unit, to_unit
 

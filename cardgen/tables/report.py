@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass, replace
+from dataclasses import replace
 
 import numpy as np
 import numpy.typing as npt
@@ -20,6 +20,7 @@ from cardgen.constants import (
 from cardgen.cruise import CruiseStatus
 from cardgen.limits import Finding, Flown, MessageUnits, allowed_nearby
 from cardgen.limits.gauges import indicated_manifold_pressure
+from cardgen.records import dataclass
 from cardgen.tables.solution import Model, Situation, Solution, solve, true_temperature_of
 from cardgen.tables.verdict import flown, judge
 

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -20,6 +19,7 @@ from cardgen.constants import (
     POUND,
     ZERO_CELSIUS,
 )
+from cardgen.records import dataclass
 from cardgen.tables.solution import Model, Situation, Solution, solve
 from cardgen.tables.verdict import judge, status_words
 

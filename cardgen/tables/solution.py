@@ -6,7 +6,7 @@ give. Card, table and check all ask them through `solve`.
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import replace
 
 import numpy as np
 import numpy.typing as npt
@@ -35,6 +35,7 @@ from cardgen.limits.gauges import (
     true_rpm,
 )
 from cardgen.limits.kinds import Rating
+from cardgen.records import dataclass
 
 FloatArray = npt.NDArray[np.float64]
 Floats = float | FloatArray
