@@ -17,7 +17,8 @@ from numpy.typing import NDArray
 from random_aircraft import random_profile
 
 from cardgen.cli.main import run
-from cardgen.limits import Verdict
+from cardgen.limits import GaugeError, Limits, Source, Verdict
+from cardgen.limits.kinds import LeastManifoldPressure
 from cardgen.profile import load_profile
 from cardgen.profile.assembly import model_of
 from cardgen.profile.card_content import card_of
@@ -74,6 +75,29 @@ def test_every_printed_setting_flies() -> None:
     for verdict, power in _checked(model, composed):
         assert not np.isnan(power).any()
         assert not (verdict == Verdict.OUTSIDE).any()
+
+
+def test_full_throttle_is_forbidden_where_its_printed_reading_breaks_a_limit() -> None:
+    """The gauge reads a little more than the digits shown: both must keep a least pressure."""
+    profile = load_profile(DEMO)
+    exact = GaugeError((0.0,), (0.0,), 0.0, measured=True)
+    bare = replace(
+        profile,
+        gauges=replace(profile.gauges, tachometer=exact, manifold_pressure=exact),
+        limits=Limits(ratings=profile.limits.ratings[1:], stated_none=()),
+    )
+    card, model = card_of(bare), model_of(bare)
+    table = card.tables[-1]
+    reads, full = _readings(model, card, table)
+    shown = table.state == CellState.FULL_THROTTLE
+    printed = np.asarray(from_unit(table.manifold_pressure, card.choices.units.pressure))
+    assert (full == shown).all()
+    at = tuple(int(place[0]) for place in np.nonzero(shown & (reads > printed + 50.0)))
+    # Kept by what the gauge reads, not by what is printed of it.
+    floor = (float(reads[at] + printed[at]) / 2.0,)
+    least = LeastManifoldPressure("least", (0.0,), floor, "as written", Source("Invented"))
+    strict = replace(bare, limits=replace(bare.limits, least_manifold_pressure=(least,)))
+    assert card_of(strict).tables[-1].state[at] == CellState.FORBIDDEN
 
 
 def _many(model: Model, table: CardTable, card: Card, shown: Bools, pressure: Floats) -> Checked:
