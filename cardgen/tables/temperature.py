@@ -76,22 +76,22 @@ def row_table(
         units.altitude,
     )
     row = _nearest(rows, np.asarray(found), alone=_STEPS[units.altitude][0])
-    place = np.where(np.isnan(row), -1, np.searchsorted(rows, np.nan_to_num(row)))
     altitudes = np.asarray(from_unit(pressure_altitude, units.altitude))
     step = float(np.diff(altitudes)[0]) if altitudes.size > 1 else 0.0
-
     # Every place, and right between places, where "the nearest" is farthest.
     up, warm = np.array([(0.0, 0.0), (-0.5, -0.5), (-0.5, 0.5), (0.5, -0.5), (0.5, 0.5)]).T
+    at = np.nonzero(np.isfinite(row))
     pressure, flow, speed = _moved(
         model,
         choices,
         tables=tables,
-        place=place,
-        pressure_altitude=altitudes + up[:, None] * step,
-        temperature=kelvin + warm[:, None] * (kelvin[1] - kelvin[0]),
+        place=np.searchsorted(rows, row[at]),
+        pressure_altitude=altitudes[at[0]] + up[:, None] * step,
+        temperature=kelvin[at[1]] + warm[:, None] * (kelvin[1] - kelvin[0]),
     )
-    change = _middle(pressure[0], decimals(units).pressure)
-    left = (pressure - change[..., None], flow, speed)
+    change = np.full(row.shape, np.nan)
+    change[at] = _middle(pressure[0], decimals(units).pressure)
+    left = (pressure - change[at][:, None], flow, speed)
     worst = (float(np.nanmax(np.abs(values), initial=0.0)) for values in left)
     recovery = model.gauges.temperature_recovery
     return RowTable(
@@ -115,37 +115,46 @@ def _moved(
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Right less printed pressure, fuel flow and speed, in the card's units.
 
-    Altitudes have shape (k, rows) and temperatures (k, columns); results (k, rows, columns, cells).
+    Altitudes and temperatures have shape (k, places); results (k, places, cells).
     """
     units = choices.units
     density = model.subject.aircraft.engine.fuel_density
     changes: tuple[list[FloatArray], ...] = ([], [], [])
-    for table in tables:
+    for mixture in dict.fromkeys(table.mixture for table in tables):
+        group = [table for table in tables if table.mixture == mixture]
         right = solve(
             model,
             Situation(
-                pressure_altitude[:, :, None, None],
-                temperature[:, None, :, None],
-                table.mass,
-                model.mixture_index(table.mixture),
+                pressure_altitude[..., None, None],
+                temperature[..., None, None],
+                np.array([table.mass for table in group])[:, None],
+                model.mixture_index(mixture),
             ),
-            indicated_rpm=np.array(table.rpm),
-            power_fraction=table.power_fraction,
+            indicated_rpm=np.array(choices.rpm),
+            power_fraction=np.array([table.power_fraction for table in group])[:, None],
             with_tolerance=False,
         )
-        held = (place[..., None] >= 0) & ~right.point.full_throttle
-        held = held & (table.state[place, 0, :] == CellState.VALUE)
+        state = np.stack([table.state[place, 0] for table in group], axis=1)
+        held = (state == CellState.VALUE) & ~right.point.full_throttle
         for found, printed, collected in zip(
             (
                 to_unit(right.indicated_manifold_pressure, units.pressure),
                 fuel_flow_in(right.point.fuel_flow, units.fuel_flow, fuel_density=density),
                 to_unit(right.point.true_airspeed, units.speed),
             ),
-            (table.manifold_pressure, table.fuel_flow, table.true_airspeed),
+            zip(
+                *(
+                    (table.manifold_pressure, table.fuel_flow, table.true_airspeed)
+                    for table in group
+                ),
+                strict=True,
+            ),
             changes,
             strict=True,
         ):
-            collected.append(np.where(held, found - printed[place, 0, :], np.nan))
+            there = np.stack([values[place, 0] for values in printed], axis=1)
+            missing = np.where(held, found - there, np.nan)
+            collected.append(missing.reshape(*missing.shape[:2], -1))
     pressure, flow, speed = (np.concatenate(collected, axis=-1) for collected in changes)
     return pressure, flow, speed
 
