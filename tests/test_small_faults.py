@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import csv
+import re
+from collections import defaultdict
 from dataclasses import fields, replace
 from pathlib import Path
 
@@ -10,6 +13,7 @@ import pytest
 from limits_specimen import ALL, BLADES, CONTINUOUS, EXACT, INHG, MANUAL, SHEET, flown, only
 
 from cardgen.aircraft import Condition, Setting
+from cardgen.cli.main import run
 from cardgen.constants import HORSEPOWER
 from cardgen.cruise import CruiseStatus, solve_cruise
 from cardgen.engine import Engine
@@ -19,6 +23,12 @@ from cardgen.limits.kinds import ManifoldPressureCurve, RestrictedRpm, Source
 from cardgen.limits.statement import state_all
 from cardgen.limits.wording import MessageUnits
 from cardgen.profile import load_profile
+from cardgen.profile.assembly import model_of
+from cardgen.profile.card_content import card_of
+from cardgen.profile.fit_file import learned_for
+from cardgen.propeller.blade import blade_5868_9
+from cardgen.tables.card import CellState
+from cardgen.tables.solution import Situation, solve
 
 DEMO = Path(__file__).parent.parent / "profiles" / "aircraft" / "specimen.yaml"
 BAND = Gauges(
@@ -135,3 +145,86 @@ def test_what_a_falling_chart_permits_over_square_is_its_least_in_the_band() -> 
     setting = flown(indicated_rpm=2200.0, indicated_manifold_pressure=23.0 * INHG)
     said = one(check(only(manifold_pressure_curve=(chart,)), BAND, setting), "over_square").message
     assert "up to 24.7 inHg true at this rpm" in said
+
+
+@pytest.mark.parametrize(
+    "conditions", [("above",), ("below",), ("above", "below"), ("below", "above")]
+)
+def test_an_unknown_pressure_leaves_every_kind_of_condition_unknown(
+    conditions: tuple[str, ...],
+) -> None:
+    """Whether a range is closed at a pressure nobody knows, nobody knows."""
+    pressures = dict(zip(conditions, (20.0 * INHG, 25.0 * INHG), strict=False))
+    closed = replace(
+        BLADES,
+        above_manifold_pressure=pressures.get("above"),
+        below_manifold_pressure=pressures.get("below"),
+    )
+    setting = flown(indicated_rpm=2200.0, indicated_manifold_pressure=np.nan)
+    assert check(only(restricted_rpm=(closed,)), EXACT, setting).verdict_at() == "unknown"
+
+
+def test_the_packaged_blade_form_is_the_published_one() -> None:
+    """NACA TR 640 and 658, design 5868-9, digit for digit."""
+    path = Path(__file__).parent / "published" / "blade_form_5868-9.csv"
+    lines = [line for line in path.read_text().splitlines() if not line.startswith("#")]
+    published = np.array([[float(cell) for cell in line.split(",")[:4]] for line in lines[1:]])
+    blade = blade_5868_9()
+    ours = np.column_stack(
+        [blade.radius_fraction, blade.chord_to_diameter, blade.thickness_to_chord, blade.twist]
+    )
+    published[:, 3] = np.radians(published[:, 3])
+    np.testing.assert_allclose(ours, published, rtol=1e-12)
+
+
+def test_a_density_altitude_card_states_its_largest_error(
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    """What its note says is what `cardgen table` gives 20 °C off standard, rounded up."""
+    profile = load_profile(DEMO)
+    card = card_of(profile)
+    (note,) = (note for note in card.notes if note.startswith("Rows are density altitudes"))
+    found = re.search(r"at most ([0-9.]+) inHg, ([0-9.]+) gal/h and ([0-9]+) kt", note)
+    assert found is not None
+    altitudes = ",".join(f"{altitude:.6f}m" for altitude in profile.card.altitude)
+    words = ["table", str(DEMO), "--no-fit", "--density-altitude", altitudes, "--isa", "-20,0,20"]
+    assert run([*words, "--csv"]) == 0
+    rows = list(csv.DictReader(capsys.readouterr().out.splitlines()))
+    by_cell = defaultdict(dict)
+    for row in rows:
+        keys = ("density_altitude_ft", "rpm", "asked_percent_power", "mixture")
+        cell = tuple(row[k] if k == "mixture" else f"{float(row[k]):.3f}" for k in keys)
+        by_cell[cell][round(float(row["isa_deviation_c"]))] = row
+    names = ("manifold_pressure_inhg", "fuel_flow_gph", "true_airspeed_kt")
+    worst = dict.fromkeys(names, 0.0)
+    for cell in by_cell.values():
+        for other in (-20, 20):
+            pair = (cell[0], cell[other])
+            if all(row["full_throttle"] == "0" and row["power_hp"] for row in pair):
+                for name in names:
+                    change = abs(float(pair[1][name]) - float(pair[0][name]))
+                    worst[name] = max(worst[name], change)
+    for name, stated, step in zip(names, found.groups(), (0.1, 0.1, 1.0), strict=True):
+        assert 0.0 <= float(stated) - worst[name] < step + 1e-6, name
+
+
+def test_the_tolerance_of_a_table_is_the_largest_of_its_numbers() -> None:
+    """No more, or nobody would believe it; no less, or somebody would."""
+    profile = load_profile(DEMO)
+    card, model = card_of(profile, learned_for(profile)), model_of(profile, learned_for(profile))
+    altitude = np.array(profile.card.altitude)[:, None, None]
+    for table in card.tables:
+        found = solve(
+            model,
+            Situation(
+                altitude, 288.15 - 0.0065 * altitude, table.mass, model.mixture_index(table.mixture)
+            ),
+            indicated_rpm=np.array(table.rpm),
+            power_fraction=table.power_fraction,
+        ).tolerance
+        assert found is not None
+        assert table.tolerance is not None
+        shown = table.state <= CellState.FULL_THROTTLE
+        assert shown.any()
+        assert table.tolerance[0] == pytest.approx(found.manifold_pressure[shown].max() / INHG)
+        assert table.tolerance[2] == pytest.approx(found.true_airspeed[shown].max() * 3600 / 1852)

@@ -29,17 +29,19 @@ from .faults import Mutant, mutants
 
 ROOT: Final = Path(__file__).parents[2]
 
-_LIMITS: Final = ("limits", "limits_bars", "limits_matrix", "gauges", "limits_random")
+_LIMITS: Final = (
+    "limits", "limits_bars", "limits_matrix", "gauges", "small_faults", "limits_random",
+)  # fmt: skip
 TESTS: Final[Mapping[str, Sequence[str]]] = {
-    "cardgen.engine.model": ("engine", "cruise", "independent_solver"),
-    "cardgen.engine.mixture": ("mixture", "engine", "cruise"),
+    "cardgen.engine.model": ("engine", "cruise", "independent_solver", "small_faults"),
+    "cardgen.engine.mixture": ("mixture", "engine", "cruise", "small_faults"),
     "cardgen.propeller.element": ("propeller_published", "propeller_table"),
     "cardgen.propeller.governor": ("propeller_governor", "cruise"),
     "cardgen.propeller.loss": ("propeller_loss", "propeller_published"),
     "cardgen.propeller.table": ("propeller_table", "propeller_governor", "cruise"),
-    "cardgen.propeller.blade": ("propeller_blade",),
+    "cardgen.propeller.blade": ("propeller_blade", "small_faults"),
     "cardgen.airframe": ("airframe", "cruise"),
-    "cardgen.cruise": ("cruise", "independent_solver"),
+    "cardgen.cruise": ("cruise", "independent_solver", "small_faults"),
     "cardgen.limits.bars": _LIMITS,
     "cardgen.limits.charts": _LIMITS,
     "cardgen.limits.check": _LIMITS,
@@ -51,7 +53,7 @@ TESTS: Final[Mapping[str, Sequence[str]]] = {
     "cardgen.limits.nearby": _LIMITS,
     "cardgen.limits.ratings": _LIMITS,
     "cardgen.limits.setting": _LIMITS,
-    "cardgen.tables.compose": ("tables_agree", "million"),
+    "cardgen.tables.compose": ("tables_agree", "small_faults", "million"),
     "cardgen.tables.verdict": ("tables_agree", "cli", "million"),
     "cardgen.tables.printed": ("tables_agree", "million"),
     "cardgen.fit.estimate": ("fit_file", "fit_published", "demonstration_fit"),
