@@ -20,6 +20,7 @@ from cardgen.engine import Engine
 from cardgen.limits import GaugeError, Gauges, allowed_nearby, check
 from cardgen.limits.finding import Finding, Findings
 from cardgen.limits.kinds import ManifoldPressureCurve, RestrictedRpm, Source
+from cardgen.limits.nearby import rank_nearby
 from cardgen.limits.statement import state_all
 from cardgen.limits.wording import MessageUnits
 from cardgen.profile import load_profile
@@ -88,10 +89,12 @@ def test_the_fuel_of_an_engine_weighs_six_pounds_a_gallon_unless_told() -> None:
 def test_what_the_propeller_table_does_not_cover_is_no_want_of_power() -> None:
     """A tip beyond the table is another answer than an aeroplane too heavy to fly."""
     profile = load_profile(DEMO)
-    setting = Setting(np.array([4500.0, 2400.0]), profile.mixtures[0], power=150e3)
-    air = Condition(8e4, 270.0, np.array([1200.0, 20_000.0]))
+    # In cold air the tip of 2850 rpm is as far outside as that of 4500 rpm.
+    setting = Setting(np.array([4500.0, 2850.0, 2400.0]), profile.mixtures[0], power=264e3)
+    air = Condition(1e5, 231.0, np.array([1200.0, 1850.0, 20_000.0]))
     point = solve_cruise(profile.aircraft, air, setting=setting)
-    assert point.status.tolist() == [CruiseStatus.OUTSIDE_MODEL, CruiseStatus.NO_LEVEL_FLIGHT]
+    outside, short = CruiseStatus.OUTSIDE_MODEL, CruiseStatus.NO_LEVEL_FLIGHT
+    assert point.status.tolist() == [outside, outside, short]
 
 
 def test_two_readings_of_one_limit_are_shown_with_who_states_them() -> None:
@@ -228,3 +231,32 @@ def test_the_tolerance_of_a_table_is_the_largest_of_its_numbers() -> None:
         assert shown.any()
         assert table.tolerance[0] == pytest.approx(found.manifold_pressure[shown].max() / INHG)
         assert table.tolerance[2] == pytest.approx(found.true_airspeed[shown].max() * 3600 / 1852)
+
+
+@pytest.mark.parametrize(
+    ("above", "below"), [(20.0, None), (None, 25.0), (20.0, 25.0), (24.0, 22.0), (22.0, 20.0)]
+)
+def test_a_range_that_is_closed_here_is_never_told_as_open(
+    above: float | None, below: float | None
+) -> None:
+    """Outside by 100 rpm, not "not closed at this manifold pressure"; or inside and told so."""
+    closed = replace(
+        BLADES,
+        above_manifold_pressure=None if above is None else above * INHG,
+        below_manifold_pressure=None if below is None else below * INHG,
+    )
+    setting = flown(indicated_rpm=2250.0)  # at 23.0 inHg
+    found = one(check(only(restricted_rpm=(closed,)), EXACT, setting), "restricted_rpm")
+    is_closed = (above, below) != (24.0, 22.0)
+    assert found.verdict == ("outside" if is_closed else "inside")
+    assert (found.margin is None) == (not is_closed)
+    assert ("not closed at this manifold pressure" in found.message) == (not is_closed)
+
+
+def test_ranking_offers_three_unless_asked_for_another_number() -> None:
+    """The same three, whoever asks."""
+    rpm = np.arange(2000.0, 2300.0, 25.0)
+    setting = flown(indicated_rpm=rpm, solved=np.ones(rpm.shape, dtype=np.bool_))
+    findings = check(only(), EXACT, setting)
+    assert len(rank_nearby(findings, setting, indicated_rpm=2150.0)) == 3
+    assert len(rank_nearby(findings, setting, indicated_rpm=2150.0, count=2)) == 2
