@@ -217,7 +217,7 @@ def blade_5868_9() -> Blade:
     2, 3, and 4 blades of Clark Y and R.A.F. 6 airfoil sections", NACA TR 640 (1938).
     D. Biermann, E. P. Hartman, "Tests of two full-scale propellers with different pitch
     distributions, at blade angles up to 60 degrees", NACA TR 658 (1939). The numbers were read in
-    an open transcription of TR 658, whose author added the rounded tip and the row at 0.25 R.
+    an open copy of TR 658, whose author added the rounded tip and the row at 0.25 R.
     """
     x, chord, thickness, twist = zip(*_FORM_5868_9, strict=True)
     return Blade(x, chord, thickness, tuple(float(a) for a in np.radians(twist)))
