@@ -29,6 +29,8 @@ from cardgen.profile.card_content import card_of
 from cardgen.profile.fit_file import learned_for
 from cardgen.propeller.blade import blade_5868_9
 from cardgen.tables.card import CellState
+from cardgen.tables.choices import SecondUnits, UnitSet
+from cardgen.tables.printed import decimals, in_second_units
 from cardgen.tables.solution import Situation, solve
 
 DEMO = Path(__file__).parent.parent / "profiles" / "aircraft" / "specimen.yaml"
@@ -260,3 +262,25 @@ def test_ranking_offers_three_unless_asked_for_another_number() -> None:
     findings = check(only(), EXACT, setting)
     assert len(rank_nearby(findings, setting, indicated_rpm=2150.0)) == 3
     assert len(rank_nearby(findings, setting, indicated_rpm=2150.0, count=2)) == 2
+
+
+@pytest.mark.parametrize(
+    ("pressure", "flow", "places"),
+    [
+        ("inHg", "gal/h", (1, 1, 0)), ("cmHg", "impgal/h", (1, 1, 0)), ("hPa", "l/h", (0, 0, 0)),
+        ("mmHg", "lb/h", (0, 0, 0)), ("mbar", "kg/h", (0, 0, 0)), ("kPa", "l/h", (1, 0, 0)),
+    ],
+)  # fmt: skip
+def test_numbers_are_as_fine_as_a_gauge_is_read(
+    pressure: str, flow: str, places: tuple[int, int, int]
+) -> None:
+    """A tenth of an inch, a hectopascal, a tenth of a gallon, a litre, a pound, a knot."""
+    found = decimals(UnitSet(pressure=pressure, fuel_flow=flow))
+    assert (found.pressure, found.fuel_flow, found.speed) == places
+
+
+def test_second_units_are_rounded_to_the_safe_side_too() -> None:
+    """10.1 gal/h are 38.23 L/h, which is 39; 150 kt are 277.8 km/h, which is 277."""
+    second = SecondUnits(pressure="hPa", fuel_flow="l/h", speed="km/h")
+    found = in_second_units(24.5, 10.1, 150.0, units=UnitSet(), second=second)
+    assert found == (830.0, 39.0, 277.0)

@@ -289,7 +289,7 @@ def options(rng: random.Random, bench: Bench) -> Case:
     if command in ("check", "table") and rng.random() < 0.4:
         return _impossible(rng, bench, command)
     odd = rng.choice(_ODD).replace("/", "").replace("\n", "")
-    profile = bench.profile if rng.random() < 0.9 else odd
+    profile = bench.profile if rng.random() < 0.9 else odd.lstrip("-") or "x"
     if command == "new":
         profile = str(bench.folder / f"{odd}.yaml")
     out = str(bench.folder / "out")
