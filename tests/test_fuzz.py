@@ -17,6 +17,7 @@ from cardgen.cruise import CruiseStatus, solve_cruise
 from cardgen.errors import ReleaseError
 from cardgen.profile import load_profile
 from cardgen.render.history import HISTORY_NAME, load_history
+from cardgen.render.packaged import packaged
 
 ROOT = Path(__file__).parent.parent
 SETTING = {"--map": "23", "--rpm": "2400", "--altitude": "6000"}
@@ -227,3 +228,23 @@ def test_damaged_input_ends_in_an_answer_or_a_reason(kind: str) -> None:
     # Not everything is refused, and not everything passes.
     assert tally.codes[0] + tally.codes[1] > CASES[kind] // 20
     assert tally.codes[2] + tally.codes[3] > CASES[kind] // 20
+
+
+def test_a_program_file_that_is_missing_or_empty_is_told(tmp_path: Path) -> None:
+    """Nobody can mend a card that lacks its letters but by installing again."""
+    for path in (tmp_path / "gone.ttf", tmp_path / "empty.ttf"):
+        (tmp_path / "empty.ttf").touch()
+        with pytest.raises(ReleaseError, match=f"{path.name}.*install it again"):
+            packaged(path)
+    (tmp_path / "empty.ttf").write_bytes(b"letters")
+    assert packaged(tmp_path / "empty.ttf") == b"letters"
+
+
+def test_a_mixture_that_is_none_is_refused_for_many_settings_too(
+    capsys: pytest.CaptureFixture[str], demo: Path
+) -> None:
+    """`--mixture` stands for the rows that name none."""
+    file = demo.with_name("settings.csv")
+    file.write_text("map_inhg,rpm,pressure_altitude_ft\n23,2300,6000\n")
+    words = ["check", str(demo), "--points", str(file), "--mixture", "syrup"]
+    refused(capsys, words, code=2, because="'syrup' is no mixture; the profile has Best power")
