@@ -125,7 +125,7 @@ def bars_of(tables: Sequence[Findings]) -> Bars:
         for findings, keyed in zip(tables, ranked, strict=True)
     )
     # A reason that always stands behind another forbids no cell of its own: it needs no letter.
-    met = sorted({int(place) for cells in index for place in np.unique(cells)} - {-1})
+    met = sorted({place for cells in index for place in cells.ravel().tolist()} - {-1})
     renumber = np.full(len(places) + 1, -1, dtype=np.int16)
     renumber[met] = np.arange(len(met), dtype=np.int16)
     reasons = tuple(

@@ -335,7 +335,7 @@ def _areas(
 ) -> Iterator[Area]:
     """Forbidden ground of one panel, reason by reason."""
     edges = _edges(percent, ceiling)
-    for reason in sorted({int(value) for value in np.unique(reasons)} - {-1}):
+    for reason in sorted(set(reasons.ravel().tolist()) - {-1}):
         pieces = tuple(_pieces(charted.altitude, edges, reasons == reason))
         if pieces:
             yield Area(reason, pieces)
