@@ -67,6 +67,8 @@ def _rows(table: CardTable, rng: random.Random, places: int) -> RowTable:
             np.nan,
             np.array([[rng.randint(-21, 21) / 10**places for _ in r] for r in rows]),
         ),
+        breaks=np.array([[rng.random() < 0.1 for _ in r] for r in rows]) & ~np.isnan(rows),
+        breaking=((0.65, "Best power", 2200.0), (0.75, "Economy", 2500.0)),
         error=(0.15, 0.05, 1.0),
         rise=rng.choice([None, 2.4]),
     )

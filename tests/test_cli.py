@@ -526,3 +526,56 @@ def test_the_readme_names_every_command_and_option() -> None:
             for option in parameter.opts:
                 if option.startswith("--"):
                     assert f"`{option}" in readme or f" {option}" in readme, f"{name} {option}"
+
+
+# ---------------------------------------------------------------------------- what must not happen
+
+
+def test_fitting_again_does_not_fly_a_new_propeller(
+    demo: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """The handbook's rows are of the old one: refused, and the card keeps its stamp."""
+    demo.write_text(demo.read_text().replace("specimen-p2-77.yaml", "specimen-p3-75.yaml"))
+    code, out, err = command(capsys, "fit", demo)
+    assert code == 3
+    assert out == ""
+    assert "propeller changed since" in err
+    command(capsys, "make", demo, "-o", tmp_path)
+    text = " ".join(PdfReader(tmp_path / "specimen.pdf").pages[0].extract_text().split())
+    assert "NOT FLOWN SINCE THE CHANGE of propeller" in text
+
+
+def test_a_copy_with_another_propeller_is_compared_as_the_same_engine(
+    demo: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """What was learned of engine and airframe is true of both: the fuel flow does not move."""
+    new = demo.with_name("new.yaml")
+    new.write_text(demo.read_text().replace("specimen-p2-77.yaml", "specimen-p3-75.yaml"))
+    _, copied, _ = command(capsys, "compare", demo, new, "--csv")
+    part = demo.parent.parent / "propellers" / "specimen-p3-75.yaml"
+    _, swapped, _ = command(capsys, "compare", demo, "--with", f"propeller={part}", "--csv")
+    assert copied == swapped
+
+
+@pytest.mark.parametrize("words", [("check", "--map", 22, "--rpm", 2400, "--altitude", 6000),
+                                   ("table",)])  # fmt: skip
+def test_nothing_is_computed_above_the_gross_weight(
+    demo: Path, capsys: pytest.CaptureFixture[str], words: tuple[object, ...]
+) -> None:
+    """3000 lb is the demonstration's."""
+    name, *rest = words
+    code, out, err = command(capsys, name, demo, *rest, "--weight", 3001)
+    assert code == 2
+    assert out == ""
+    assert "gross 3000 lb" in err
+
+
+def test_a_table_without_any_answer_ends_with_four(
+    demo: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """Every row says why."""
+    code, out, _ = command(
+        capsys, "table", demo, "--rpm", 1500, "--altitude", 18500, "--percent", 65, "--csv"
+    )
+    assert code == 4
+    assert {row["status"] for row in rows_of(out)} <= {"no_level_flight", "outside_model"}

@@ -206,15 +206,18 @@ def test_other_evidence_replaces_the_earlier_and_says_so(tree: Path) -> None:
     assert "5 rows that are not given here" in start.notes[0]
 
 
-def test_the_old_handbook_is_not_taken_for_the_new_propeller_in_silence(tree: Path) -> None:
-    """A corrected data sheet and a replaced part look the same; the user must hear of both."""
+def test_the_old_handbook_is_not_taken_for_the_new_propeller(tree: Path) -> None:
+    """A mended data sheet and a replaced part look the same: only the user can tell which it is."""
     fit(tree, ROWS)
     exchange(tree, "specimen-p2-77.yaml", "specimen-p3-75.yaml")
     profile = load_profile(tree)
     points = read_points(profile, [tree.with_name("rows.csv")])
-    start = start_of(profile, points, record=read_fit(fit_path(profile), profile))
+    record = read_fit(fit_path(profile), profile)
+    with pytest.raises(DataError, match="evidence is of the old one"):
+        start_of(profile, points, record=record)
+    start = start_of(profile, points, record=record, corrected=True)
     assert start.earlier is None
-    assert "evidence is of the old one" in start.notes[0]
+    assert "propeller corrected" in start.notes[0]
 
 
 def test_one_fit_after_the_other_tells_what_both_tell_together(tree: Path) -> None:

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from cardgen.cli.loading import fit_options, load
+from cardgen.cli.loading import allowed_masses, fit_options, load
 from cardgen.cli.options import quantity
 from cardgen.errors import NoSolutionError, UsageError
 
@@ -114,7 +114,7 @@ def check(
         indicated_rpm=rpm,
         pressure_altitude=altitude,
         indicated_temperature=oat,
-        mass=weight or read.card.mass[0],
+        mass=allowed_masses(read, None if weight is None else (weight,))[0],
         mixture=index,
         units=message_units(read.card.units),
     )
@@ -159,7 +159,7 @@ def _text(report: SettingReport) -> list[str]:
             lines.append(f"{finding.verdict}: {finding.message}{source}")
     # What is kept is told by its margin alone; the whole wording stands in the JSON.
     lines += [
-        f"inside: {finding.message.split('; ')[0]}"
+        f"inside: {finding.limit.replace('_', ' ')}: {finding.message.split('; ')[0]}"
         for finding in report.findings
         if finding.verdict == "inside"
     ]

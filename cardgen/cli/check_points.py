@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 
 import click
 
+from cardgen.cli.loading import allowed_masses
 from cardgen.errors import UsageError
 
 if TYPE_CHECKING:
@@ -59,7 +60,9 @@ def check_points(
     except KeyError as error:
         known = ", ".join(item.name for item in profile.mixtures)
         raise UsageError(f"{error.args[0]!r} is no mixture; the profile has {known}") from None
-    settings = read_settings(profile, points, mixture=index, mass=weight or profile.card.mass[0])
+    (mass, *_) = allowed_masses(profile, None if weight is None else (weight,))
+    settings = read_settings(profile, points, mixture=index, mass=mass)
+    allowed_masses(profile, (float(settings.mass.max()),))
     checked = check_many(
         model,
         manifold_pressure=settings.manifold_pressure,

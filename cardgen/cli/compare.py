@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import csv
 import io
 import json
@@ -13,7 +14,7 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from cardgen.cli.loading import fit_options
-from cardgen.errors import UsageError
+from cardgen.errors import DataError, UsageError
 
 if TYPE_CHECKING:
     from cardgen.compare import Change, Comparison
@@ -105,14 +106,19 @@ def _sides(
     if fit_file is not None and no_fit:
         raise click.UsageError("--fit and --no-fit exclude each other.")
     from cardgen.profile import load_profile  # noqa: PLC0415 - loads pydantic
-    from cardgen.profile.fit_file import learned_for  # noqa: PLC0415
+    from cardgen.profile.fit_file import fit_path, learned_for  # noqa: PLC0415
 
     before = load_profile(old)
     now = load_profile(new) if new is not None else load_profile(old, instead=_instead(swaps))
-    return (
-        (before, learned_for(before, fit=fit_file, no_fit=no_fit)),
-        (now, learned_for(now, fit=fit_file, no_fit=no_fit)),
-    )
+    known = learned_for(before, fit=fit_file, no_fit=no_fit)
+    fresh = learned_for(now, fit=fit_file, no_fit=no_fit)
+    if fresh is None and known is not None:
+        # The new profile has no fit of its own yet: what was learned of the parts that both have
+        # is true of it too, and a fitted aircraft against an unfitted one would show differences
+        # that nobody made.
+        with contextlib.suppress(DataError):  # nothing in common
+            fresh = learned_for(now, fit=fit_path(before))
+    return (before, known), (now, fresh)
 
 
 def _instead(swaps: Sequence[str]) -> dict[Any, Path]:

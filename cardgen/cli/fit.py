@@ -31,6 +31,12 @@ if TYPE_CHECKING:
     help="Write the fit file although a column looks like another unit than its name says.",
 )
 @click.option(
+    "--corrected",
+    is_flag=True,
+    help="The part files were corrected and nothing on the aircraft was replaced: fit the same "
+    "evidence again.",
+)
+@click.option(
     "--sheet",
     type=click.Path(path_type=Path),
     help="Write a sheet of the points to fly next (PDF); without --points nothing is fitted.",
@@ -41,6 +47,7 @@ def fit(
     points: tuple[str, ...],
     out: Path | None,
     accept_suspect: bool,
+    corrected: bool,
     sheet: Path | None,
     as_json: bool,
 ) -> int:
@@ -77,7 +84,7 @@ def fit(
         )
     target = out or fit_path(read)
     given = read_points(read, paths)
-    start = start_of(read, given, record=_standing(read, target))
+    start = start_of(read, given, record=_standing(read, target), corrected=corrected)
     suspicions = suspect(read, given, start)
     if suspicions and not accept_suspect:
         raise DataError([suspicion_problem(suspicion) for suspicion in suspicions])

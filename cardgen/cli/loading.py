@@ -8,6 +8,8 @@ from typing import TYPE_CHECKING, Any, TypeVar
 
 import click
 
+from cardgen.errors import UsageError
+
 if TYPE_CHECKING:
     from cardgen.profile.assembly import Learned
     from cardgen.profile.document import Profile
@@ -37,6 +39,38 @@ def fit_options(command: Function) -> Function:
         type=click.Path(path_type=Path),
         help="Fit file to use instead of NAME.fit.yaml beside the profile.",
     )(command)
+
+
+def allowed_masses(profile: Profile, asked: tuple[float, ...] | None) -> tuple[float, ...]:
+    """Return the masses asked for, or those of the card.
+
+    Parameters
+    ----------
+    profile : Profile
+        The aircraft [-]
+    asked : tuple of float, optional
+        What the user asks for [kg]
+
+    Returns
+    -------
+    tuple of float
+        None of them above the gross mass of the profile [kg]
+
+    Raises
+    ------
+    UsageError
+        One of them is.
+    """
+    masses = asked or profile.card.mass
+    greatest = profile.gross_mass * (1.0 + 1e-9)
+    if max(masses) > greatest:
+        from cardgen.constants import POUND  # noqa: PLC0415
+
+        raise UsageError(
+            f"weight {max(masses) / POUND:.0f} lb is above the gross {greatest / POUND:.0f} lb of "
+            "the profile; nothing is computed for it"
+        )
+    return masses
 
 
 def load(profile: str, *, fit_file: Path | None, no_fit: bool) -> tuple[Profile, Learned | None]:

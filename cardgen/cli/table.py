@@ -12,9 +12,9 @@ from typing import TYPE_CHECKING, Final
 
 import click
 
-from cardgen.cli.loading import fit_options, load
+from cardgen.cli.loading import allowed_masses, fit_options, load
 from cardgen.cli.options import quantities
-from cardgen.errors import UsageError
+from cardgen.errors import NoSolutionError, UsageError
 
 if TYPE_CHECKING:
     from cardgen.profile.document import Profile
@@ -80,7 +80,7 @@ def table(
     as_json: bool,
     fit_file: Path | None,
     no_fit: bool,
-) -> None:
+) -> int:
     """Print the settings of PROFILE.
 
     What is not asked for is taken from the profile's card. Rpm and manifold pressure are what the
@@ -97,6 +97,7 @@ def table(
     if altitude is not None and density_altitude is not None:
         raise click.UsageError("--altitude and --density-altitude exclude each other.")
     read, learned = load(profile, fit_file=fit_file, no_fit=no_fit)
+    from cardgen.cruise import CruiseStatus  # noqa: PLC0415
     from cardgen.profile.assembly import model_of, stamps  # noqa: PLC0415
     from cardgen.tables.rows import COLUMNS, cells, rows  # noqa: PLC0415
 
@@ -125,6 +126,8 @@ def table(
             *_text(cells(columns, ["mixture", *(n for n, _, _ in _SHOWN), "full_throttle"])),
         ):
             click.echo(line)
+    unsolved = {CruiseStatus.NO_LEVEL_FLIGHT.word, CruiseStatus.OUTSIDE_MODEL.word}
+    return NoSolutionError.exit_code if set(columns["status"]) <= unsolved else 0
 
 
 def _combinations(
@@ -164,7 +167,7 @@ def _combinations(
         isa_deviation=np.array(deviations),
         indicated_rpm=np.array(rpm or card.rpm),
         power_fraction=np.array(percent or card.power_fraction),
-        mass=np.array(weight or card.mass),
+        mass=np.array(allowed_masses(profile, weight)),
         mixtures=mixtures,
     )
 

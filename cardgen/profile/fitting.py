@@ -8,6 +8,7 @@ from typing import Final
 import numpy as np
 import numpy.typing as npt
 
+from cardgen.errors import DataError, Problem
 from cardgen.fit import (
     Estimate,
     EvidenceRange,
@@ -52,7 +53,9 @@ class Start:
     notes: tuple[str, ...]
 
 
-def start_of(profile: Profile, points: Points, *, record: FitRecord | None) -> Start:
+def start_of(
+    profile: Profile, points: Points, *, record: FitRecord | None, corrected: bool = False
+) -> Start:
     """Return what is known before the points are looked at.
 
     Parameters
@@ -63,11 +66,18 @@ def start_of(profile: Profile, points: Points, *, record: FitRecord | None) -> S
         What is to be fitted [-]
     record : FitRecord, optional
         The fit that stands so far [-]
+    corrected : bool
+        Whether the user says that part files were corrected and nothing was replaced [-]
 
     Returns
     -------
     Start
         The priors of the profile, or what the earlier fit still says [-]
+
+    Raises
+    ------
+    DataError
+        A part is another one than that which evidence given here was taken with.
 
     Notes
     -----
@@ -89,12 +99,23 @@ def start_of(profile: Profile, points: Points, *, record: FitRecord | None) -> S
     again = given & (set(record.rows) | before) or set(points.files) & set(record.files)
     if found.replaced:
         changed = " and ".join(found.replaced)
-        if again:
-            note = (
-                f"{changed} changed in the profile since evidence given here was fitted. If it was "
-                "replaced, that evidence is of the old one: fit only flights made since, and the "
-                "earlier fit tells the rest."
+        if again and not corrected:
+            raise DataError(
+                [
+                    Problem(
+                        str(profile.path),
+                        0,
+                        0,
+                        "",
+                        f"{changed} changed since evidence given here was fitted, so that this "
+                        "evidence is of the old one",
+                        "only points flown since, with --points FILE: the earlier fit tells the "
+                        "rest; or --corrected, if the file was mended and nothing was replaced",
+                    )
+                ]
             )
+        if again:
+            note = f"{changed} corrected in the profile since evidence given here was fitted."
             return Start(mean, covariance, None, (note,))
         return _carried(profile, record, found, changed)
     if record.earlier is not None and not given & before:

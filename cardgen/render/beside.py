@@ -29,6 +29,7 @@ from cardgen.tables.card import Card
 from cardgen.tables.range import DISTANCE_STEP, MINUTE_STEP, fuel_unit
 
 AT_EDGE: Final = "*"
+BREAKS: Final = "!"
 _DISTANCES: Final = {"kt": "nm", "mph": "mi", "km/h": "km", "m/s": "km"}
 
 
@@ -146,8 +147,8 @@ def _rows(card: Card, table: RowTable) -> Listing:
         f"At the nearest pressure altitude (PA) and outside air temperature ({degrees}): the row "
         f"to use ({altitude_label(card)}), and what to add to its manifold pressure, because rows "
         "are for standard air. Nothing is read between.",
-        f"What is then still wrong is at most {pressure}, {flow}, {speed}. What is set must keep "
-        "every limit; full throttle and forbidden cells stay as printed.",
+        f"What is then still wrong is at most {pressure}, {flow}, {speed}. Numbers marked "
+        f"{FULL_THROTTLE} hold in standard air only, and forbidden cells stay forbidden.",
     ]
     if table.rise:
         lead.append(
@@ -172,9 +173,11 @@ def _rows(card: Card, table: RowTable) -> Listing:
                 altitude,
                 tuple(
                     cell
-                    for row, change in zip(table.row[k], table.change[k], strict=True)
+                    for row, change, breaks in zip(
+                        table.row[k], table.change[k], table.breaks[k], strict=True
+                    )
                     for cell in (
-                        _cell(float(row)),
+                        _cell(float(row), mark=BREAKS if breaks else ""),
                         _signed(float(change), places),
                     )
                 ),
@@ -183,7 +186,20 @@ def _rows(card: Card, table: RowTable) -> Listing:
         ),
         marks=(
             (OUT_OF_REACH, "No row of this card is near, or it holds no part-throttle number."),
+            (BREAKS, _breaking(table)),
         ),
+    )
+
+
+def _breaking(table: RowTable) -> str:
+    """Return which settings break a limit once they are changed."""
+    groups: dict[str, list[str]] = {}
+    for power, mixture, rpm in table.breaking:
+        groups.setdefault(f"{percent(power)} {mixture} at", []).append(number(rpm))
+    named = "; ".join(f"{name} {', '.join(speeds)} rpm" for name, speeds in groups.items())
+    return (
+        f"In air this warm or cold a setting of that row breaks a limit, if it is one of these: "
+        f"{named}. Choose another."
     )
 
 

@@ -9,7 +9,7 @@ from itertools import pairwise
 
 from cardgen.errors import ReleaseError
 from cardgen.records import dataclass
-from cardgen.render.beside import Cell, Listing, listings
+from cardgen.render.beside import Cell, Listing, listings, marks_of
 from cardgen.render.expectation import is_same
 from cardgen.render.fonts import CAP_HEIGHT, Face, printable, width
 from cardgen.render.wording import left_out_text, number
@@ -204,11 +204,15 @@ def read_listing(words: Sequence[Word], unread: Unread, place: str) -> bool:
     for text in listing.lead:
         if find_text(words, text, at) is None:
             raise ReleaseError(f"read-back: {place}, {listing.title}: does not say {text!r}")
-    before = len(unread.cells)
+    title, before = at, set(unread.cells)
     while unread.cells and (head := _find_label(words, at, listing)) is not None:
         at = _read_part(words, head, unread, place)
-    if len(unread.cells) == before:
+    struck = before - unread.cells
+    if not struck:
         raise ReleaseError(f"read-back: {place}, {listing.title}: no rows follow")
+    for mark, meaning in marks_of(listing, [listing.rows[r].cells[c] for r, c in struck]):
+        if find_text(words, meaning, title) is None:
+            raise ReleaseError(f"read-back: {place}, {listing.title}: {mark} is not {meaning!r}")
     return True
 
 

@@ -7,7 +7,7 @@ from html.parser import HTMLParser
 from typing import Any
 
 from cardgen.errors import ReleaseError
-from cardgen.render.beside import Listing, listings
+from cardgen.render.beside import Listing, listings, marks_of
 from cardgen.render.beside_readback import cell_is_right, read_chart
 from cardgen.render.edition import Edition
 from cardgen.render.expectation import (
@@ -149,7 +149,9 @@ def read_back_html(page: bytes, edition: Edition) -> None:
             *(text for _, text in legend(card, {state_of(table, at) for at in cells_of(table)})),
         ]
     for listing in beside:
+        cells = [cell for row in listing.rows for cell in row.cells]
         wanted += [listing.title, *listing.lead]
+        wanted += [meaning for _, meaning in marks_of(listing, cells)]
     for chart in card.back.charts:
         wanted += [chart.title, chart.lead]
     for section in note_sections(card, identity):

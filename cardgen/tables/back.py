@@ -49,8 +49,13 @@ class RowTable:
         The nearest density altitude that the card has a row for, NaN where none is near [-]
     change : ndarray, shape (rows, columns)
         What to add there to the manifold pressure of that row, NaN where no setting is known [-]
+    breaks : ndarray of bool, shape (rows, columns)
+        Whether some cell of that row, so changed, breaks a limit there [-]
+    breaking : tuple of (float, str, float)
+        Power fraction, mixture and rpm of every cell that does so anywhere [-]
     error : tuple of float
-        What is then still wrong, at most, of manifold pressure, fuel flow and speed [-]
+        What is then still wrong, at most, of manifold pressure, fuel flow and speed of the cells
+        that are not at full throttle [-]
     rise : float, optional
         What the thermometer reads too much at the greatest printed speed, in the card's degrees;
         None where the profile does not state it [-]
@@ -60,6 +65,8 @@ class RowTable:
     temperature: tuple[float, ...]
     row: FloatArray
     change: FloatArray
+    breaks: BoolArray
+    breaking: tuple[tuple[float, str, float], ...]
     error: tuple[float, float, float]
     rise: float | None = None
 

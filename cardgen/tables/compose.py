@@ -408,7 +408,7 @@ def _temperature_notes(
     return (
         "Rows are density altitudes, computed in air of standard temperature. In air up to "
         f"{step:.0f} {unit_sign(units.temperature)} warmer or colder, at the same density "
-        "altitude, the right numbers differ by at most "
+        "altitude, the right numbers of cells that are not at full throttle differ by at most "
         f"{pressure_error:.{places.pressure}f} {units.pressure}, "
         f"{flow_error:.{places.fuel_flow}f} {unit_sign(units.fuel_flow)} and "
         f"{speed_error:.0f} {units.speed}.",

@@ -15,11 +15,13 @@ from cardgen.atmosphere import (
     standard_temperature,
     vapour_pressure,
 )
+from cardgen.limits import Verdict
 from cardgen.tables.back import RowTable
 from cardgen.tables.card import CardTable, CellState
 from cardgen.tables.choices import CardChoices, UnitSet
 from cardgen.tables.printed import decimals, fuel_flow_in, rounded, temperature_step_in
 from cardgen.tables.solution import Model, Situation, solve
+from cardgen.tables.verdict import judge
 from cardgen.units import from_unit, to_unit
 
 FloatArray = npt.NDArray[np.float64]
@@ -30,6 +32,13 @@ _COLUMNS: Final = {
     "degC": (-25.0, -10.0, 5.0, 20.0, 35.0),
     "degF": (-15.0, 10.0, 35.0, 60.0, 85.0),
 }
+
+_OUT_OF_REACH: Final = ("full_throttle", "solution")
+"""Findings that say a setting cannot be made, and not that it must not."""
+
+_OWN_ERROR: Final = 0.02
+"""Share of rated power by which the change itself may be off (it is told as a pressure): a ceiling
+of power that is passed by less, as where a 75 % column stands under a 75 % ceiling, is not told."""
 
 
 def row_table(
@@ -93,12 +102,24 @@ def row_table(
     change[at] = _middle(pressure[0], decimals(units).pressure)
     left = (pressure - change[at][:, None], flow, speed)
     worst = (float(np.nanmax(np.abs(values), initial=0.0)) for values in left)
+    breaks = np.zeros(row.shape, dtype=np.bool_)
+    breaks[at], breaking = _breaks(
+        model,
+        choices,
+        tables=tables,
+        place=np.searchsorted(rows, row[at]),
+        pressure_altitude=altitudes[at[0]],
+        temperature=kelvin[at[1]],
+        change=change[at],
+    )
     recovery = model.gauges.temperature_recovery
     return RowTable(
         pressure_altitude=tuple(float(value) for value in pressure_altitude),
         temperature=tuple(float(value) for value in temperature),
         row=row,
         change=change,
+        breaks=breaks,
+        breaking=breaking,
         error=(next(worst), next(worst), next(worst)),
         rise=None if recovery is None else _rise(tables, recovery, units),
     )
@@ -157,6 +178,71 @@ def _moved(
             collected.append(missing.reshape(*missing.shape[:2], -1))
     pressure, flow, speed = (np.concatenate(collected, axis=-1) for collected in changes)
     return pressure, flow, speed
+
+
+def _breaks(
+    model: Model,
+    choices: CardChoices,
+    *,
+    tables: Sequence[CardTable],
+    place: npt.NDArray[np.intp],
+    pressure_altitude: FloatArray,
+    temperature: FloatArray,
+    change: FloatArray,
+) -> tuple[npt.NDArray[np.bool_], tuple[tuple[float, str, float], ...]]:
+    """Whether cells, changed as told, break a limit at each place, and which ones do anywhere.
+
+    A cell at full throttle is judged at the full throttle of the place.
+    """
+    unit = choices.units.pressure
+    broken = np.zeros(place.shape, dtype=np.bool_)
+    which: dict[tuple[float, str, float], None] = {}
+    for mixture in dict.fromkeys(table.mixture for table in tables):
+        group = [table for table in tables if table.mixture == mixture]
+        situation = Situation(
+            pressure_altitude[:, None, None],
+            temperature[:, None, None],
+            np.array([table.mass for table in group])[:, None],
+            model.mixture_index(mixture),
+        )
+        rpm = np.array(choices.rpm)
+        asked = solve(
+            model,
+            situation,
+            indicated_rpm=rpm,
+            power_fraction=np.array([table.power_fraction for table in group])[:, None],
+            with_tolerance=False,
+        )
+        state = np.stack([table.state[place, 0] for table in group], axis=1)
+        printed = np.stack([table.manifold_pressure[place, 0] for table in group], axis=1)
+        reading = np.where(
+            state == CellState.VALUE,
+            from_unit(printed + change[:, None, None], unit),
+            asked.indicated_manifold_pressure,
+        )
+        shown = ((state == CellState.VALUE) | (state == CellState.FULL_THROTTLE)) & np.isfinite(
+            reading
+        )
+        there = solve(
+            model,
+            situation,
+            indicated_rpm=rpm,
+            indicated_pressure=np.where(shown, reading, asked.indicated_manifold_pressure),
+            with_tolerance=False,
+        )
+        outside: npt.NDArray[np.bool_] = np.zeros(shown.shape, dtype=np.bool_)
+        for judgement in judge(model, there).judgements:
+            if judgement.limit not in _OUT_OF_REACH:
+                over = np.asarray(judgement.verdict == Verdict.OUTSIDE)
+                if judgement.unit == "%":
+                    over = np.asarray(over & (judgement.margin < -_OWN_ERROR))
+                outside = np.asarray(outside | (shown & over))
+        broken |= np.any(outside, axis=(1, 2))
+        for table, cells in zip(group, np.any(outside, axis=0).tolist(), strict=True):
+            for speed, hit in zip(choices.rpm, cells, strict=True):
+                if hit:
+                    which[(table.power_fraction, mixture, speed)] = None
+    return broken, tuple(which)
 
 
 def _middle(pressure: FloatArray, places: int) -> FloatArray:
