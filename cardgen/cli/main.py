@@ -5,6 +5,7 @@ from __future__ import annotations
 import gc
 import importlib
 import io
+import os
 import sys
 from typing import Any, Final
 
@@ -85,6 +86,8 @@ def main(arguments: list[str] | None = None) -> None:
     # A command lives for a moment and drops hardly anything in cycles: looking for them among all
     # that imports make, and once more at the end, would take a sixth of the time of a check.
     gc.set_threshold(100_000)
+    # The matrices here have some fifteen rows: threads to multiply them take longer to start.
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
     code = run(arguments)
     gc.freeze()
     sys.exit(code)

@@ -47,9 +47,14 @@ class Measure:
 
 
 def environment() -> dict[str, str]:
-    """Environment of an installed package: byte code may be kept."""
+    """Environment of an installed package: byte code may be kept.
+
+    One thread for linear algebra: those that numpy starts idle at full speed for a tenth of a
+    second, which would count as work in every process alike and make ratios look better than the
+    clock does.
+    """
     kept = {key: value for key, value in os.environ.items() if key != "PYTHONDONTWRITEBYTECODE"}
-    return {**kept, "PYTHONPATH": str(ROOT)}
+    return {**kept, "PYTHONPATH": str(ROOT), "OPENBLAS_NUM_THREADS": "1"}
 
 
 def run(words: Sequence[str]) -> float:
