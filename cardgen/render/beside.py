@@ -144,15 +144,14 @@ def _rows(card: Card, table: RowTable) -> Listing:
     degrees = sign(units.temperature)
     pressure, flow, speed = _amounts(card, table.error)
     lead = [
-        f"At the nearest pressure altitude (PA) and outside air temperature ({degrees}): the row "
-        f"to use ({altitude_label(card)}), and what to add to its manifold pressure, because rows "
-        "are for standard air. Nothing is read between.",
-        f"What is then still wrong is at most {pressure}, {flow}, {speed}. Numbers marked "
-        f"{FULL_THROTTLE} hold in standard air only, and forbidden cells stay forbidden.",
+        "At the nearest pressure altitude (PA) and air temperature: the row to use "
+        f"({altitude_label(card)}), and what to add to its manifold pressure.",
+        f"Still wrong then: at most {pressure}, {flow}, {speed}. {FULL_THROTTLE} numbers hold in "
+        "standard air only.",
     ]
     if table.rise:
         lead.append(
-            f"The temperature is the true one: in cruise this thermometer reads up to "
+            "The temperature is true: in cruise this thermometer reads up to "
             f"{number(math.ceil(table.rise))} {degrees} more."
         )
     return Listing(
@@ -197,10 +196,7 @@ def _breaking(table: RowTable) -> str:
     for power, mixture, rpm in table.breaking:
         groups.setdefault(f"{percent(power)} {mixture} at", []).append(number(rpm))
     named = "; ".join(f"{name} {', '.join(speeds)} rpm" for name, speeds in groups.items())
-    return (
-        f"In air this warm or cold a setting of that row breaks a limit, if it is one of these: "
-        f"{named}. Choose another."
-    )
+    return f"There a setting of that row breaks a limit: {named}. Choose another."
 
 
 def _wind(value: float) -> str:
